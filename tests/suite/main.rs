@@ -1,0 +1,1 @@
+//! The outside checks, one binary: a module a topic.
