@@ -1,1 +1,10 @@
-//! (being built)
+//! Pure laws of light and circuits, each with its published source. Numbers in, numbers out: no files, no blocks, no state.
+
+pub mod air;
+pub mod constants;
+pub mod diode;
+pub mod led;
+pub mod noise;
+pub mod opamp;
+pub mod photodiode;
+pub mod sunlight;
