@@ -1,0 +1,115 @@
+//! The driver: volts to current through the emitter.
+
+use super::emitter::Emitter;
+use crate::design::Section;
+use crate::physics::diode::SeriesLoop;
+
+/// A driver with its emitter's voltage in the loop.
+#[derive(Debug, Clone)]
+pub struct Driver {
+    pub supply: f64,
+    kind: Kind,
+}
+
+#[derive(Debug, Clone)]
+enum Kind {
+    /// supply + v stands across the resistor, what drives it and the emitter.
+    SeriesResistor { around: SeriesLoop, resistor: f64 },
+    /// i = s·ln(1 + e^((bias + slope·v)/s)), s = slope·V_T, held at what the supply allows.
+    CurrentSink { bias: f64, slope: f64, softness: f64, sense: f64, compliance: SeriesLoop, room: f64 },
+}
+
+impl Driver {
+    /// From its section; `behind` is the resistance that drives it, Ω, `vt` the thermal voltage.
+    pub fn new(section: &Section, emitter: &Emitter, behind: f64, vt: f64) -> Self {
+        let supply = section.number("supply");
+        let kind = match section.kind.as_deref() {
+            Some("current-sink") => {
+                let (slope, sense) = (section.number("slope"), section.number("sense"));
+                Kind::CurrentSink {
+                    bias: section.number("bias"),
+                    slope,
+                    softness: slope * vt,
+                    sense,
+                    compliance: emitter.in_loop(sense),
+                    room: supply - section.number("saturation"),
+                }
+            }
+            _ => {
+                let resistor = section.number("resistor");
+                Kind::SeriesResistor { around: emitter.in_loop(resistor + behind), resistor }
+            }
+        };
+        Self { supply, kind }
+    }
+
+    pub fn title(&self) -> &'static str {
+        match self.kind {
+            Kind::SeriesResistor { .. } => "series resistor",
+            Kind::CurrentSink { .. } => "current sink",
+        }
+    }
+
+    /// Current, A, at `input` volts where `rest` is the input's rest; `heat_voltage` (V) is what the junction's heat beyond rest has
+    /// added to the emitter's forward voltage.
+    #[inline]
+    pub fn current(&self, rest: f64, input: f64, heat_voltage: f64) -> f64 {
+        match &self.kind {
+            Kind::SeriesResistor { around, .. } => around.current(self.supply + input - heat_voltage).max(0.0),
+            Kind::CurrentSink { bias, slope, softness, compliance, room, .. } => {
+                let asked = soft_turn_off(bias + slope * (input - rest), *softness);
+                asked.min(compliance.current(room - heat_voltage).max(0.0))
+            }
+        }
+    }
+
+    /// Whether `current` is all that the supply allows.
+    pub fn at_compliance(&self, current: f64, heat_voltage: f64) -> bool {
+        match &self.kind {
+            Kind::SeriesResistor { .. } => false,
+            Kind::CurrentSink { compliance, room, .. } => current >= compliance.current(room - heat_voltage).max(0.0),
+        }
+    }
+
+    /// Bias asked for, A.
+    pub fn asked_at_rest(&self) -> f64 {
+        match &self.kind {
+            Kind::SeriesResistor { .. } => 0.0,
+            Kind::CurrentSink { bias, softness, .. } => soft_turn_off(*bias, *softness),
+        }
+    }
+
+    /// Slope of the current against the input at rest, S.
+    pub fn slope(&self, input: f64, current: f64) -> f64 {
+        match &self.kind {
+            Kind::SeriesResistor { around, .. } => {
+                if self.supply + input > 0.0 { around.slope(current) } else { 0.0 }
+            }
+            Kind::CurrentSink { bias, slope, softness, .. } => {
+                if self.at_compliance(current, 0.0) { 0.0 } else { slope / (1.0 + (-bias / softness).exp()) }
+            }
+        }
+    }
+
+    /// Driver volts that a kelvin of junction heat is worth, V/K (signed): only the resistor driver feels the forward voltage.
+    pub fn heat_voltage(&self, emitter: &Emitter) -> f64 {
+        match self.kind {
+            Kind::SeriesResistor { .. } => -emitter.drift(),
+            Kind::CurrentSink { .. } => 0.0,
+        }
+    }
+
+    /// Resistances whose Johnson noise stands in series with the input, Ω, with their causes.
+    pub fn noisy_resistances(&self, emitter: &Emitter) -> Vec<(&'static str, f64)> {
+        match self.kind {
+            Kind::SeriesResistor { resistor, .. } => vec![("resistor", resistor + emitter.resistance())],
+            Kind::CurrentSink { sense, .. } => vec![("sense", sense)],
+        }
+    }
+}
+
+/// s·ln(1 + e^(i/s)): the smooth ramp of a transistor that turns off.
+fn soft_turn_off(current: f64, softness: f64) -> f64 {
+    let x = current / softness;
+    if x > 40.0 { current } else { softness * x.exp().ln_1p() }
+}

@@ -1,0 +1,223 @@
+//! The transmit head: a driver and its emitter, which share one current. Volts in, emitted watts out.
+
+mod driver;
+mod emitter;
+mod in_time;
+
+use num_complex::Complex64;
+
+use super::noise::Contributor;
+use super::wiring::{Drive, Load};
+use super::{Conditions, Limit, Model, Reading, Runner, Share};
+use crate::design::Section;
+use crate::physics::constants::thermal_voltage;
+use crate::quantity::Dimension;
+use crate::signal::pole::FirstOrderLaw;
+use driver::Driver;
+use emitter::Emitter;
+
+/// Driver and emitter on paper.
+///
+/// Self-heating is one thermal pole for the junction: ΔT' = (R_th·(V_f·i − P) − ΔT)/τ; flux falls with it by
+/// `flux_temperature` and the forward voltage by the band gap's law. Good from 250 K to 400 K of junction temperature; the
+/// flux never falls below nought.
+pub struct TransmitHead {
+    path: String,
+    driver: Driver,
+    emitter: Emitter,
+    /// Share of the voltage before that reaches the driver's input.
+    division: f64,
+    rest: Rest,
+    tangent: Tangent,
+    /// Noise voltages in series with the driver's input.
+    at_input: Vec<Contributor>,
+    /// Relative noise of the light, 1/Hz.
+    intensity: Contributor,
+    supply: f64,
+    warnings: Vec<String>,
+}
+
+/// Where the head rests.
+#[derive(Debug, Clone, Copy)]
+struct Rest {
+    /// Voltage of rest at the driver's input, V.
+    input: f64,
+    /// A
+    current: f64,
+    /// Heating of the junction, K.
+    heating: f64,
+    /// All junctions together, V.
+    forward_voltage: f64,
+    /// W
+    flux: f64,
+}
+
+/// Slopes at rest.
+#[derive(Debug, Clone, Copy)]
+struct Tangent {
+    /// Flux against driver volts: the direct way and the slow way through the junction's heat.
+    heated: FirstOrderLaw,
+    /// Current against driver volts, S.
+    current: f64,
+}
+
+impl TransmitHead {
+    /// What the driver shows to the stage before it.
+    pub fn input_load(driver: &Section) -> Load {
+        Load::resistor(driver.optional("input_resistance").unwrap_or(f64::INFINITY), 0.0)
+    }
+
+    /// From `[transmitter.driver]` and `[transmitter.emitter]`, behind `before`; `temperature` in K.
+    pub fn new(driver_section: &Section, emitter_section: &Section, before: &Drive, temperature: f64) -> Self {
+        let load = Self::input_load(driver_section);
+        let division = before.division(load.signal_conductance());
+        let behind = before.series * division;
+        let input = if before.blocked.is_some() { before.rest } else { before.loaded_rest(&load) };
+        let vt = thermal_voltage(temperature);
+        let mut emitter = Emitter::new(emitter_section, vt, temperature);
+        let driver = Driver::new(driver_section, &emitter, behind, vt);
+
+        let current = driver.current(input, input, 0.0);
+        let forward_voltage = emitter.forward_voltage(current, 0.0);
+        emitter.set_drift(current, temperature);
+        let cold_flux = emitter.flux(current, 0.0);
+        let heating = emitter.heating_at_rest(forward_voltage * current, cold_flux);
+        let flux = emitter.flux(current, heating);
+        let rest = Rest { input, current, heating, forward_voltage, flux };
+        let tangent = tangent(&driver, &emitter, &rest);
+
+        let driver_name = &driver_section.path;
+        let at_input = driver
+            .noisy_resistances(&emitter)
+            .into_iter()
+            .map(|(cause, r)| {
+                Contributor::white(format!("{driver_name}.{cause}"), crate::physics::noise::johnson(r, temperature))
+            })
+            .collect();
+        let intensity = Contributor::white(
+            format!("{}.intensity", emitter_section.path),
+            emitter_section.optional("intensity_noise").map_or(0.0, |db| 10f64.powf(db / 10.0)),
+        );
+        let mut warnings = Vec::new();
+        let limit = emitter.max_current;
+        if current > limit {
+            warnings.push(format!(
+                "{}: it rests at {}, above the emitter's maximum of {}",
+                emitter_section.path,
+                Dimension::Ampere.show(current),
+                Dimension::Ampere.show(limit)
+            ));
+        }
+        if current < driver.asked_at_rest() * 0.99 {
+            warnings.push(format!(
+                "{driver_name}: the supply has too little room for the bias; the emitter rests at {} instead of {}",
+                Dimension::Ampere.show(current),
+                Dimension::Ampere.show(driver.asked_at_rest())
+            ));
+        }
+        if current <= 0.0 {
+            warnings.push(format!("{driver_name}: no current flows at rest; the emitter is dark"));
+        }
+        Self {
+            path: "transmitter.emitter".into(),
+            supply: driver.supply,
+            driver,
+            emitter,
+            division,
+            rest,
+            tangent,
+            at_input,
+            intensity,
+            warnings,
+        }
+    }
+
+    /// Emitted flux at rest, W.
+    pub fn flux(&self) -> f64 {
+        self.rest.flux
+    }
+
+    /// Largest current that the emitter may carry, A.
+    pub fn max_current(&self) -> f64 {
+        self.emitter.max_current
+    }
+
+    /// Quasi-static current at a deviation `x` (V) of the voltage before, A.
+    pub fn current(&self, x: f64) -> f64 {
+        self.driver.current(self.rest.input, self.rest.input + self.division * x, 0.0)
+    }
+}
+
+/// Slopes of flux against driver voltage, with the junction's heat as one pole.
+fn tangent(driver: &Driver, emitter: &Emitter, rest: &Rest) -> Tangent {
+    let current = driver.slope(rest.input, rest.current);
+    let by_heat = current * driver.heat_voltage(emitter);
+    let flux_by_current = emitter.flux_slope(rest.current, rest.heating);
+    let flux_by_heat = emitter.flux_by_heat(rest.current);
+    // Heat W = V_f·i − P of all junctions; dW = a·dv + b·dΔT.
+    let heat_by_current = rest.forward_voltage + rest.current * emitter.voltage_slope(rest.current) - flux_by_current;
+    let a = heat_by_current * current;
+    let b = heat_by_current * by_heat + rest.current * emitter.drift() - flux_by_heat;
+    let (resistance, time) = emitter.thermal();
+    let direct = flux_by_current * current;
+    let slow = flux_by_current * by_heat + flux_by_heat;
+    let heated = if resistance > 0.0 && time > 0.0 {
+        FirstOrderLaw { direct, residue: slow * resistance * a / time, rate: (1.0 - resistance * b) / time }
+    } else {
+        FirstOrderLaw { direct, residue: 0.0, rate: 1.0 }
+    };
+    Tangent { heated, current }
+}
+
+impl Model for TransmitHead {
+    fn path(&self) -> &str {
+        &self.path
+    }
+
+    fn title(&self) -> String {
+        format!("{} and LED", self.driver.title())
+    }
+
+    fn operating_point(&self) -> Vec<Reading> {
+        let r = &self.rest;
+        vec![
+            Reading { name: "bias current", value: r.current, dimension: Dimension::Ampere },
+            Reading { name: "forward voltage", value: r.forward_voltage, dimension: Dimension::Volt },
+            Reading { name: "flux", value: r.flux, dimension: Dimension::Watt },
+            Reading { name: "junction heating", value: r.heating, dimension: Dimension::Kelvin },
+            Reading { name: "current per volt", value: self.tangent.current, dimension: Dimension::Transconductance },
+            Reading { name: "supply power", value: self.supply * r.current, dimension: Dimension::Watt },
+        ]
+    }
+
+    fn curve(&self, x: f64) -> f64 {
+        self.emitter.flux(self.current(x), self.rest.heating) - self.rest.flux
+    }
+
+    fn transfer(&self, frequency: f64) -> Complex64 {
+        self.division * self.tangent.heated.at(frequency) * self.emitter.carriers().at(frequency)
+    }
+
+    fn noise(&self, frequency: f64) -> Vec<Share> {
+        let by_input = (self.tangent.heated.at(frequency) * self.emitter.carriers().at(frequency)).norm_sqr();
+        let mut shares: Vec<Share> = self.at_input.iter().map(|c| c.share(frequency, by_input)).collect();
+        shares.push(self.intensity.share(frequency, self.rest.flux * self.rest.flux));
+        shares
+    }
+
+    fn limits(&self) -> Vec<Limit> {
+        vec![Limit::Level { cause: "emitter dark", at: -self.rest.flux }]
+    }
+
+    fn warnings(&self) -> Vec<String> {
+        self.warnings.clone()
+    }
+
+    fn slowest_time(&self) -> f64 {
+        if self.tangent.heated.residue == 0.0 { 0.0 } else { 1.0 / self.tangent.heated.rate }
+    }
+
+    fn runner(&self, conditions: &Conditions) -> Box<dyn Runner> {
+        in_time::runner(self, conditions)
+    }
+}
