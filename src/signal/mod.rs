@@ -1,4 +1,9 @@
-//! Signals as numbers in time: files, rates, filters, noises, spectra. Knows nothing of light and circuits.
+//! Signals as numbers in time: WAV files, sample rates, filters, noise streams, spectra and test tones.
+//!
+//! Nothing here knows of light or of circuits. Samples are f64, rates are in Hz.
 
 pub mod implicit;
+pub mod noise;
 pub mod pole;
+pub mod resample;
+pub mod wav;

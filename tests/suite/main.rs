@@ -1,1 +1,4 @@
 //! The outside checks, one binary: a module a topic.
+
+mod resampling;
+mod wav;
