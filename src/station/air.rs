@@ -222,7 +222,8 @@ impl Model for AirPath {
     }
 
     fn runner(&self, conditions: &Conditions) -> Box<dyn Runner> {
-        let cuts = self.interruptions.iter().map(|i| Cut::new(i.clone(), conditions.seed)).collect();
+        let kept = if conditions.interruptions { self.interruptions.as_slice() } else { &[] };
+        let cuts = kept.iter().map(|i| Cut::new(i.clone(), conditions.seed)).collect();
         Box::new(AirRunner { gain: self.gain, flux: self.flux, rate: conditions.rate, sample: 0, cuts, count: 0 })
     }
 }

@@ -39,6 +39,8 @@ pub struct Conditions {
     pub lamps: bool,
     pub seed: u64,
     pub channel: usize,
+    /// Whether the path's interruptions happen.
+    pub interruptions: bool,
     /// Whether the run starts with discharged capacitors and a cold emitter.
     pub cold: bool,
     /// Names of noise contributors that stay silent.
@@ -98,6 +100,17 @@ pub struct Events {
     pub interruptions: u64,
     /// Largest value of the station's own watched quantity (an emitter's current, A), where it has one.
     pub peak: Option<f64>,
+}
+
+impl Events {
+    /// Counts `other` in, as of equal parts in one place.
+    pub fn add(&mut self, other: &Self) {
+        self.clipped += other.clipped;
+        self.slewing += other.slewing;
+        self.cut_off += other.cut_off;
+        self.interruptions += other.interruptions;
+        self.peak = self.peak.into_iter().chain(other.peak).reduce(f64::max);
+    }
 }
 
 /// A station on paper: cheap, pure, without state.

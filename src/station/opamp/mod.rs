@@ -3,7 +3,7 @@
 mod loop_in_time;
 mod part;
 
-pub use part::OpampPart;
+pub use part::{OpampPart, OutputRest};
 
 use num_complex::Complex64;
 use std::f64::consts::TAU;
@@ -32,12 +32,7 @@ pub struct OpampStage {
     gain: f64,
     noise_gain: f64,
     input: FirstOrderLaw,
-    /// Quiescent output, and how far beyond its limits the resistors ask it to rest.
-    rest: f64,
-    excess: f64,
-    /// Limits of the output, counted from rest, with their causes.
-    high: (f64, &'static str),
-    low: (f64, &'static str),
+    output: OutputRest,
     contributors: Vec<Contributor>,
     warnings: Vec<String>,
 }
@@ -107,38 +102,12 @@ impl OpampStage {
         } + dc_noise_gain * part.offset
             + part.bias_current * feedback;
 
-        // Limits: the rails, and the current into the feedback and whatever hangs on the output.
-        let feedback_conductance = 1.0 / if inverting { feedback } else { feedback + ground };
-        let (low, high) = part.rails();
-        let clamp = |v: f64| v.clamp(low, high.max(low));
-        let mut rest = clamp(asked);
-        let feedback_conductance = if feedback_conductance.is_finite() { feedback_conductance } else { 0.0 };
-        let dc = |v: f64| (v - reference) * feedback_conductance + (v - next.return_voltage) * next.conductance;
-        let dc_conductance = feedback_conductance + next.conductance;
-        if dc(rest).abs() > part.output_current {
-            rest -= (dc(rest) - part.output_current.copysign(dc(rest))) / dc_conductance;
-        }
-        let signal_conductance = feedback_conductance + next.signal_conductance();
-        let current_room = |sign: f64| {
-            let room = (part.output_current - sign * dc(rest)) / signal_conductance;
-            if room.is_nan() { f64::INFINITY } else { room.max(0.0) }
-        };
-        let pick = |rail: f64, current: f64, name: &'static str| {
-            if current < rail { (current, "output current") } else { (rail, name) }
-        };
-        let up = pick(high - rest, current_room(1.0), "upper rail");
-        let down = pick(rest - low, current_room(-1.0), "lower rail");
+        // The feedback path draws its current to the reference (the virtual ground, when inverting).
+        let feedback_resistance = if inverting { feedback } else { feedback + ground };
+        let feedback_conductance = if feedback_resistance > 0.0 { 1.0 / feedback_resistance } else { 0.0 };
+        let output = part.rest(asked, feedback_conductance, next);
 
-        let mut warnings = Vec::new();
-        let excess = asked - rest;
-        if excess != 0.0 {
-            warnings.push(format!(
-                "{}: the output rests on its limit at {} (the resistors ask for {}); no signal passes",
-                section.path,
-                Dimension::Volt.show(rest),
-                Dimension::Volt.show(asked)
-            ));
-        }
+        let mut warnings: Vec<String> = output.warning(&section.path).into_iter().collect();
         let parallel = 1.0 / (1.0 / feedback + 1.0 / source);
         let closed_loop = closed_loop_bandwidth(part.gain_bandwidth, noise_gain);
         let input_corner = 1.0 / (TAU * parallel * part.input_capacitance);
@@ -187,10 +156,7 @@ impl OpampStage {
             gain,
             noise_gain,
             input,
-            rest,
-            excess,
-            high: up,
-            low: (-down.0, down.1),
+            output,
             contributors,
             warnings,
             part,
@@ -199,7 +165,7 @@ impl OpampStage {
 
     /// What it offers: a stiff node.
     pub fn drive(&self) -> Drive {
-        Drive::stiff(self.rest)
+        Drive::stiff(self.output.rest)
     }
 
     /// Closed-loop rate 2π·GBW/noise gain, rad/s; may be infinite.
@@ -207,13 +173,8 @@ impl OpampStage {
         TAU * closed_loop_bandwidth(self.part.gain_bandwidth, self.noise_gain)
     }
 
-    /// Whether the output rests on a limit, where no small signal passes.
-    fn stuck(&self) -> bool {
-        self.excess != 0.0
-    }
-
     fn loop_response(&self, frequency: f64) -> Complex64 {
-        if self.stuck() { 0.0.into() } else { FirstOrderLaw::low_pass(self.rate()).at(frequency) }
+        if self.output.stuck() { 0.0.into() } else { FirstOrderLaw::low_pass(self.rate()).at(frequency) }
     }
 }
 
@@ -251,9 +212,9 @@ impl Model for OpampStage {
 
     fn operating_point(&self) -> Vec<Reading> {
         vec![
-            Reading { name: "output", value: self.rest, dimension: Dimension::Volt },
-            Reading { name: "room above", value: self.high.0, dimension: Dimension::Volt },
-            Reading { name: "room below", value: -self.low.0, dimension: Dimension::Volt },
+            Reading { name: "output", value: self.output.rest, dimension: Dimension::Volt },
+            Reading { name: "room above", value: self.output.high.0, dimension: Dimension::Volt },
+            Reading { name: "room below", value: -self.output.low.0, dimension: Dimension::Volt },
             Reading { name: "gain", value: self.gain, dimension: Dimension::Number },
             Reading { name: "noise gain", value: self.noise_gain, dimension: Dimension::Number },
             Reading { name: "bandwidth", value: self.rate() / TAU, dimension: Dimension::Hertz },
@@ -261,7 +222,7 @@ impl Model for OpampStage {
     }
 
     fn curve(&self, x: f64) -> f64 {
-        (self.gain * x + self.excess).clamp(self.low.0, self.high.0)
+        (self.gain * x + self.output.excess).clamp(self.output.low.0, self.output.high.0)
     }
 
     fn transfer(&self, frequency: f64) -> Complex64 {
@@ -274,11 +235,7 @@ impl Model for OpampStage {
     }
 
     fn limits(&self) -> Vec<Limit> {
-        vec![
-            Limit::Level { cause: self.high.1, at: self.high.0 },
-            Limit::Level { cause: self.low.1, at: self.low.0 },
-            Limit::Slope { cause: "slew rate", at: self.part.slew },
-        ]
+        self.output.limits(self.part.slew)
     }
 
     fn warnings(&self) -> Vec<String> {
@@ -297,16 +254,16 @@ impl Model for OpampStage {
         runner.noises = noise::sources(&self.contributors, conditions);
         match conditions.curves {
             Curves::Bent => {
-                runner.low = self.low.0;
-                runner.high = self.high.0;
-                runner.excess = self.excess;
+                runner.low = self.output.low.0;
+                runner.high = self.output.high.0;
+                runner.excess = self.output.excess;
             }
             // A tangent at a limit is flat: nothing passes.
-            Curves::Straight if self.stuck() => runner.mute = true,
+            Curves::Straight if self.output.stuck() => runner.mute = true,
             Curves::Straight => {}
         }
         if conditions.cold {
-            runner.start_at(-self.rest);
+            runner.start_at(-self.output.rest);
         }
         Box::new(runner)
     }

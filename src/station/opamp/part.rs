@@ -3,7 +3,10 @@
 use crate::design::Section;
 use crate::physics::opamp::SlopeLaw;
 use crate::signal::pole::FirstOrderLaw;
+use crate::quantity::Dimension;
+use crate::station::Limit;
 use crate::station::noise::Contributor;
+use crate::station::wiring::Load;
 use std::f64::consts::TAU;
 
 /// An op-amp part with its supply and reference. SI units; noise as amplitude densities.
@@ -25,6 +28,47 @@ pub struct OpampPart {
     pub reference: f64,
     swing: (f64, f64),
     supply: (f64, f64),
+}
+
+/// An output's quiescent voltage and the limits around it.
+#[derive(Debug, Clone, Copy)]
+pub struct OutputRest {
+    /// V
+    pub rest: f64,
+    /// How far beyond the limits the resistors ask it to rest, V; 0 where it rests free.
+    pub excess: f64,
+    /// Upper limit, counted from rest, V, and its cause.
+    pub high: (f64, &'static str),
+    /// Lower limit, counted from rest, V (≤ 0), and its cause.
+    pub low: (f64, &'static str),
+}
+
+impl OutputRest {
+    /// Whether the output rests on a limit, where no small signal passes.
+    pub fn stuck(&self) -> bool {
+        self.excess != 0.0
+    }
+
+    /// The limits as a station reports them.
+    pub fn limits(&self, slew: f64) -> Vec<Limit> {
+        vec![
+            Limit::Level { cause: self.high.1, at: self.high.0 },
+            Limit::Level { cause: self.low.1, at: self.low.0 },
+            Limit::Slope { cause: "slew rate", at: slew },
+        ]
+    }
+
+    /// The warning of a stuck output, if it is.
+    pub fn warning(&self, path: &str) -> Option<String> {
+        let show = |v| Dimension::Volt.show(v);
+        self.stuck().then(|| {
+            format!(
+                "{path}: the output rests on its limit at {}, the circuit asks for {}; no small signal passes",
+                show(self.rest),
+                show(self.rest + self.excess)
+            )
+        })
+    }
 }
 
 impl OpampPart {
@@ -61,6 +105,34 @@ impl OpampPart {
         let (low, high) = (self.supply.0 + self.swing.0, self.supply.1 - self.swing.1);
         // A supply too small for its swings leaves one point between them.
         if low <= high { (low, high) } else { ((low + high) / 2.0, (low + high) / 2.0) }
+    }
+
+    /// Where the output rests when the resistors ask for `asked` volts, and its room either way.
+    ///
+    /// `feedback_conductance` (S) leads from the output to the reference; `next` hangs on the output.
+    pub fn rest(&self, asked: f64, feedback_conductance: f64, next: &Load) -> OutputRest {
+        let (low, high) = self.rails();
+        let current = |v: f64| {
+            (v - self.reference) * feedback_conductance + (v - next.return_voltage) * next.conductance
+        };
+        let mut rest = asked.clamp(low, high);
+        let dc_conductance = feedback_conductance + next.conductance;
+        if current(rest).abs() > self.output_current {
+            let beyond = current(rest) - self.output_current.copysign(current(rest));
+            rest -= beyond / dc_conductance;
+        }
+        let signal_conductance = feedback_conductance + next.signal_conductance();
+        let by_current = |sign: f64| {
+            let room = (self.output_current - sign * current(rest)) / signal_conductance;
+            // Nothing to drive, or no limit: no bound.
+            if room.is_nan() { f64::INFINITY } else { room.max(0.0) }
+        };
+        let pick = |rail: f64, current: f64, name: &'static str| {
+            if current < rail { (current, "output current") } else { (rail, name) }
+        };
+        let up = pick(high - rest, by_current(1.0), "upper rail");
+        let down = pick(rest - low, by_current(-1.0), "lower rail");
+        OutputRest { rest, excess: asked - rest, high: up, low: (-down.0, down.1) }
     }
 
     /// The input pair's slope law.

@@ -1,0 +1,95 @@
+//! The photodiode as a part, its current and capacitance around its rest.
+
+use crate::design::Section;
+use crate::physics::photodiode::{self, Depletion, Junction};
+
+/// One photodiode, or several equal ones in parallel.
+#[derive(Debug, Clone)]
+pub struct Detector {
+    pub path: String,
+    /// Light-sensitive area of all together, m².
+    pub area: f64,
+    /// A/W at the emitter's wavelength.
+    pub responsivity: f64,
+    pub junction: Junction,
+    pub depletion: Depletion,
+}
+
+impl Detector {
+    /// From `[receiver.detector]`; `wavelength` of the emitter in m, `temperature` in K, `vt` the thermal voltage.
+    pub fn new(section: &Section, wavelength: f64, temperature: f64, vt: f64) -> Self {
+        let count = section.number("count");
+        let responsivity = section.optional("responsivity").unwrap_or_else(|| {
+            photodiode::responsivity(section.number("quantum_efficiency"), wavelength)
+        });
+        Self {
+            path: section.path.clone(),
+            area: count * section.number("area"),
+            responsivity,
+            junction: Junction {
+                dark: count * photodiode::dark_current(section.number("dark_current"), temperature),
+                saturation: count * section.number("saturation_current"),
+                slope_voltage: section.number("ideality") * vt,
+                shunt: count / section.number("shunt_resistance"),
+            },
+            depletion: Depletion {
+                zero_bias: count * section.number("capacitance"),
+                built_in: section.number("built_in"),
+                grading: section.number("grading"),
+            },
+        }
+    }
+
+    /// The diode around a reverse voltage of rest, bent or as its tangent.
+    pub fn around(&self, reverse: f64, straight: bool) -> AroundRest {
+        let (current, conductance) = self.junction.reverse_current(reverse);
+        AroundRest {
+            reverse,
+            current,
+            conductance,
+            capacitance: self.depletion.capacitance(reverse),
+            charge: self.depletion.charge(reverse),
+            bent: (!straight).then_some((self.junction, self.depletion)),
+        }
+    }
+}
+
+/// Current and charge of the diode against a deviation of its reverse voltage.
+#[derive(Debug, Clone, Copy)]
+pub struct AroundRest {
+    pub reverse: f64,
+    /// Reverse current besides the photocurrent at rest, A.
+    pub current: f64,
+    /// S
+    pub conductance: f64,
+    /// F
+    pub capacitance: f64,
+    charge: f64,
+    bent: Option<(Junction, Depletion)>,
+}
+
+impl AroundRest {
+    /// Reverse current away from rest, A, and its slope, S, for `deviation` volts more of reverse bias.
+    #[inline]
+    pub fn current(&self, deviation: f64) -> (f64, f64) {
+        match &self.bent {
+            Some((junction, _)) => {
+                let (i, g) = junction.reverse_current(self.reverse + deviation);
+                (i - self.current, g)
+            }
+            None => (self.conductance * deviation, self.conductance),
+        }
+    }
+
+    /// Charge away from rest, C, and capacitance, F.
+    #[inline]
+    pub fn charge(&self, deviation: f64) -> (f64, f64) {
+        match &self.bent {
+            Some((_, depletion)) if depletion.zero_bias > 0.0 => {
+                let v = self.reverse + deviation;
+                (depletion.charge(v) - self.charge, depletion.capacitance(v))
+            }
+            _ => (self.capacitance * deviation, self.capacitance),
+        }
+    }
+}
