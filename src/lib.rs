@@ -1,7 +1,7 @@
 //! Harklight runs real audio through the paper design of an analogue audio link carried by light.
 //!
 //! The modules are floors: each imports only from those listed below it.
-//! `cli` > `report` > `render` > `figures` > `link` > `station` > `design` > `signal`, `physics` > `quantity`.
+//! `cli` > `report` > `study` > `render` > `figures` > `link` > `station` > `design` > `signal`, `physics` > `quantity`.
 
 pub mod cli;
 pub mod design;
@@ -13,3 +13,4 @@ pub mod render;
 pub mod report;
 pub mod signal;
 pub mod station;
+pub mod study;

@@ -1,6 +1,190 @@
 //! The commands. Exit codes: 0 done, 1 a `[require]` limit is not met, 2 wrong input or arguments, 3 the machine failed.
 
+pub mod measure;
+pub mod new;
+pub mod parts;
+pub mod render;
+
+use std::io::{ErrorKind, Write};
+use std::process::ExitCode;
+
+use clap::{Args, Parser, Subcommand};
+
+use crate::design::{Design, DesignError};
+use crate::link::{Link, budget};
+use crate::render::programme::{Outcome, RenderError};
+use crate::render::test_signals::{Bench, measure};
+use crate::report::{Findings, json, terminal};
+use crate::study::requirements::judge;
+
+/// Runs real audio through the paper design of an analogue audio link carried by light.
+#[derive(Parser)]
+#[command(name = "harklight", version, max_term_width = 100)]
+struct Cli {
+    #[command(subcommand)]
+    command: Command,
+}
+
+#[derive(Subcommand)]
+enum Command {
+    Render(render::Args),
+    Measure(measure::Args),
+    Parts(parts::Args),
+    New(new::Args),
+}
+
+/// How every command names a design.
+#[derive(Args, Debug)]
+pub struct DesignArgs {
+    /// The design file (TOML)
+    design: std::path::PathBuf,
+    /// Change a value of the design: a dotted path and what it shall be, as receiver.stage.2.feedback=100k
+    #[arg(long = "set", value_name = "PATH=VALUE")]
+    sets: Vec<String>,
+    /// Seed of all noises (default: the design's, else 1)
+    #[arg(long)]
+    seed: Option<u64>,
+    /// Print the whole result as one JSON document
+    #[arg(long)]
+    json: bool,
+}
+
+/// A command's failure, with the exit code that it means.
+pub enum Failure {
+    Input(miette::Report),
+    Machine(miette::Report),
+}
+
+impl From<DesignError> for Failure {
+    fn from(e: DesignError) -> Self {
+        Self::Input(e.into())
+    }
+}
+
+impl From<miette::Report> for Failure {
+    fn from(e: miette::Report) -> Self {
+        Self::Input(e)
+    }
+}
+
+impl From<RenderError> for Failure {
+    fn from(e: RenderError) -> Self {
+        if e.is_machine_fault() { Self::Machine(e.into()) } else { Self::Input(e.into()) }
+    }
+}
+
 /// Runs the command line of this process.
-pub fn main() -> std::process::ExitCode {
-    std::process::ExitCode::SUCCESS
+pub fn main() -> ExitCode {
+    let cli = match Cli::try_parse() {
+        Ok(cli) => cli,
+        Err(e) => {
+            // clap's own text: usage errors are exit code 2, help and version 0.
+            let _ = e.print();
+            return ExitCode::from(if e.use_stderr() { 2 } else { 0 });
+        }
+    };
+    let done = match &cli.command {
+        Command::Render(args) => render::run(args),
+        Command::Measure(args) => measure::run(args),
+        Command::Parts(args) => parts::run(args).map_err(Failure::from),
+        Command::New(args) => new::run(args).map_err(Failure::from),
+    };
+    match done {
+        Ok(code) => code,
+        Err(Failure::Input(report)) => {
+            eprintln!("{report:?}");
+            ExitCode::from(2)
+        }
+        Err(Failure::Machine(report)) => {
+            eprintln!("{report:?}");
+            ExitCode::from(3)
+        }
+    }
+}
+
+/// Measures the link, says what was found, and judges the limits.
+///
+/// The text goes to standard output, or to standard error where that carries audio; `figures` is a file for the JSON document.
+fn conclude(
+    args: &DesignArgs,
+    design: &Design,
+    link: &Link,
+    programme: Option<&Outcome>,
+    figures: Option<&std::path::Path>,
+    audio_on_stdout: bool,
+) -> Result<ExitCode, Failure> {
+    let seed = seed(args, design);
+    let bench = Bench::of(design);
+    let mut measured = measure(link, &bench, seed);
+    if let Some(p) = programme {
+        measured.figures.clipped_samples = Some(p.channels.iter().map(|c| c.received.clipped()).sum());
+    } else {
+        measured.figures.explain("clipped_samples", "no programme was rendered");
+    }
+    let budget = budget(link, bench.band);
+    let lamps = link.lamps().iter().any(|l| l.lines().next().is_some());
+    let verdicts = judge(design, &measured.figures, lamps);
+    let warnings = link.warnings();
+    let findings = Findings {
+        design,
+        link,
+        bench,
+        seed,
+        measured: &measured,
+        budget: &budget,
+        verdicts: &verdicts,
+        warnings: &warnings,
+        programme,
+    };
+    for warning in &warnings {
+        eprintln!("warning: {warning}");
+    }
+    if figures.is_some() || args.json {
+        let mut document = serde_json::to_string_pretty(&json::document(&findings)).unwrap_or_default();
+        document.push('\n');
+        if let Some(path) = figures {
+            write_whole(path, document.as_bytes())?;
+        }
+        if args.json {
+            print(&document);
+        }
+    }
+    if !args.json {
+        let text = terminal::text(&findings);
+        if audio_on_stdout {
+            eprint!("{text}");
+        } else {
+            print(&text);
+        }
+    }
+    Ok(ExitCode::from(u8::from(verdicts.iter().any(|v| !v.met))))
+}
+
+fn seed(args: &DesignArgs, design: &Design) -> u64 {
+    args.seed.or(design.seed).unwrap_or(1)
+}
+
+/// Prints to standard output; a reader that has gone is no fault of ours.
+fn print(text: &str) {
+    let mut out = std::io::stdout().lock();
+    if let Err(e) = out.write_all(text.as_bytes()).and_then(|()| out.flush())
+        && e.kind() != ErrorKind::BrokenPipe
+    {
+        eprintln!("standard output: {e}");
+    }
+}
+
+/// Writes a file that appears whole or not at all.
+fn write_whole(path: &std::path::Path, bytes: &[u8]) -> Result<(), Failure> {
+    let folder = path.parent().filter(|p| !p.as_os_str().is_empty()).unwrap_or(std::path::Path::new("."));
+    let written = tempfile::NamedTempFile::new_in(folder).and_then(|mut file| {
+        file.write_all(bytes)?;
+        file.as_file().sync_all()?;
+        file.persist(path).map_err(|e| e.error)?;
+        Ok(())
+    });
+    written.map_err(|e| {
+        let report = miette::miette!("`{}` could not be written: {e}", path.display());
+        if e.kind() == ErrorKind::NotFound { Failure::Input(report) } else { Failure::Machine(report) }
+    })
 }

@@ -1,0 +1,3 @@
+//! Questions about designs, answered from figures: whether the limits are met.
+
+pub mod requirements;
