@@ -1,1 +1,2 @@
 //! The outside checks, one binary: a module a topic.
+mod design;
