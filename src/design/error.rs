@@ -28,7 +28,11 @@ impl Place {
     /// The line, counted from 1.
     pub fn line(&self) -> usize {
         let end = self.range.start.min(self.source.text.len());
-        self.source.text.as_bytes()[..end].iter().filter(|b| **b == b'\n').count() + 1
+        self.source.text.as_bytes()[..end]
+            .iter()
+            .filter(|b| **b == b'\n')
+            .count()
+            + 1
     }
 }
 
@@ -47,8 +51,14 @@ struct Inner {
 impl DesignError {
     /// `message` says what is wrong, `help` what would be accepted (may be empty).
     pub fn new(place: Option<&Place>, message: impl Into<String>, help: impl Into<String>) -> Self {
-        let code = place.map(|p| NamedSource::new(&p.source.name, Arc::from(p.source.text.as_str())));
-        DesignError(Box::new(Inner { message: message.into(), help: help.into(), place: place.cloned(), code }))
+        let code =
+            place.map(|p| NamedSource::new(&p.source.name, Arc::from(p.source.text.as_str())));
+        DesignError(Box::new(Inner {
+            message: message.into(),
+            help: help.into(),
+            place: place.cloned(),
+            code,
+        }))
     }
 
     /// What would be accepted.
@@ -68,7 +78,8 @@ impl DesignError {
 
     /// The text that is underlined.
     pub fn underlined(&self) -> Option<&str> {
-        self.place().and_then(|p| p.source.text.get(p.range.clone()))
+        self.place()
+            .and_then(|p| p.source.text.get(p.range.clone()))
     }
 }
 
@@ -80,7 +91,13 @@ impl fmt::Display for DesignError {
 
 impl fmt::Debug for DesignError {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
-        write!(f, "{} (line {:?}; {})", self.0.message, self.line(), self.0.help)
+        write!(
+            f,
+            "{} (line {:?}; {})",
+            self.0.message,
+            self.line(),
+            self.0.help
+        )
     }
 }
 

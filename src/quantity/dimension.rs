@@ -76,12 +76,27 @@ pub(super) struct Unit {
 }
 
 const fn unit(text: &'static str, exponent: i32, prefix_power: i32) -> Unit {
-    Unit { text, exponent, prefix_power }
+    Unit {
+        text,
+        exponent,
+        prefix_power,
+    }
 }
 
 /// SI prefixes with their powers of ten; `u` stands for µ. Centi and deci are read before metres only.
-pub(super) const PREFIXES: [(&str, i32); 11] =
-    [("f", -15), ("p", -12), ("n", -9), ("µ", -6), ("u", -6), ("m", -3), ("c", -2), ("d", -1), ("k", 3), ("M", 6), ("G", 9)];
+pub(super) const PREFIXES: [(&str, i32); 11] = [
+    ("f", -15),
+    ("p", -12),
+    ("n", -9),
+    ("µ", -6),
+    ("u", -6),
+    ("m", -3),
+    ("c", -2),
+    ("d", -1),
+    ("k", 3),
+    ("M", 6),
+    ("G", 9),
+];
 
 impl Dimension {
     /// Every dimension, in the order of declaration.
@@ -149,7 +164,11 @@ impl Dimension {
             Self::SlewRate => ("a slew rate", "V/s", "0.5 V/µs"),
             Self::VoltNoise => ("a noise voltage density", "V/√Hz", "12 nV/√Hz"),
             Self::AmpereNoise => ("a noise current density", "A/√Hz", "0.5 pA/√Hz"),
-            Self::Cn2 => ("a structure parameter of turbulence", "m^-2/3", "1e-14 m^-2/3"),
+            Self::Cn2 => (
+                "a structure parameter of turbulence",
+                "m^-2/3",
+                "1e-14 m^-2/3",
+            ),
             Self::Speed => ("a speed", "m/s", "3 m/s"),
             Self::Number => ("a plain number", "", "1.5"),
             Self::Count => ("a whole number", "", "2"),
@@ -201,19 +220,35 @@ impl Dimension {
             unit("W/m2/um", 6, 1),
             unit("W/m3", 0, 1),
         ];
-        const RESPONSIVITY: &[Unit] = &[unit("A/W", 0, 1), unit("A/mW", 3, 1), unit("A/µW", 6, 1), unit("A/uW", 6, 1)];
+        const RESPONSIVITY: &[Unit] = &[
+            unit("A/W", 0, 1),
+            unit("A/mW", 3, 1),
+            unit("A/µW", 6, 1),
+            unit("A/uW", 6, 1),
+        ];
         const TRANSCONDUCTANCE: &[Unit] = &[unit("A/V", 0, 1), unit("S", 0, 1)];
         const KELVIN: &[Unit] = &[unit("K", 0, 0), unit("mK", -3, 0)];
         const THERMAL: &[Unit] = &[unit("K/W", 0, 1), unit("K/mW", 3, 0), unit("°C/W", 0, 0)];
-        const PER_KELVIN: &[Unit] =
-            &[unit("%/K", -2, 0), unit("%/°C", -2, 0), unit("1/K", 0, 0), unit("/K", 0, 0), unit("ppm/K", -6, 0)];
+        const PER_KELVIN: &[Unit] = &[
+            unit("%/K", -2, 0),
+            unit("%/°C", -2, 0),
+            unit("1/K", 0, 0),
+            unit("/K", 0, 0),
+            unit("ppm/K", -6, 0),
+        ];
         const RADIAN: &[Unit] = &[unit("rad", 0, 1)];
         const DECIBEL: &[Unit] = &[unit("dB", 0, 0)];
         const PER_HERTZ: &[Unit] = &[unit("dB/Hz", 0, 0)];
         const PER_METRE: &[Unit] = &[unit("dB/m", 0, 0), unit("dB/km", -3, 0)];
         const LOUDNESS: &[Unit] = &[unit("LUFS", 0, 0), unit("LKFS", 0, 0)];
         const SHARE: &[Unit] = &[unit("%", -2, 0)];
-        const SLEW: &[Unit] = &[unit("V/s", 0, 1), unit("V/ms", 3, 1), unit("V/µs", 6, 1), unit("V/us", 6, 1), unit("V/ns", 9, 1)];
+        const SLEW: &[Unit] = &[
+            unit("V/s", 0, 1),
+            unit("V/ms", 3, 1),
+            unit("V/µs", 6, 1),
+            unit("V/us", 6, 1),
+            unit("V/ns", 9, 1),
+        ];
         const VOLT_NOISE: &[Unit] = &[unit("V/√Hz", 0, 1)];
         const AMPERE_NOISE: &[Unit] = &[unit("A/√Hz", 0, 1)];
         const CN2: &[Unit] = &[unit("m-2/3", 0, 0), unit("m(-2/3)", 0, 0)];

@@ -16,7 +16,12 @@ pub enum QuantityError {
     Comma { text: String, expected: Dimension },
     /// A unit of another dimension, or none that is known.
     #[error("`{text}`: found {}, expected {expected}", found_words(.unit, .found))]
-    WrongUnit { text: String, unit: String, found: Option<Dimension>, expected: Dimension },
+    WrongUnit {
+        text: String,
+        unit: String,
+        found: Option<Dimension>,
+        expected: Dimension,
+    },
     /// A number alone where its unit cannot be guessed.
     #[error("`{text}` has no unit; expected {expected}")]
     NoUnit { text: String, expected: Dimension },
@@ -31,10 +36,18 @@ pub enum QuantityError {
     NotWhole { text: String, expected: Dimension },
     /// Three or four digits that are a number and a component code at once.
     #[error("`{text}` could be read as {plain} or, as a digit code, as {coded}")]
-    DigitCode { text: String, plain: String, coded: String },
+    DigitCode {
+        text: String,
+        plain: String,
+        coded: String,
+    },
     /// A letter code followed by its tolerance letter.
     #[error("`{text}` ends in the tolerance letter {letter}; a value carries no tolerance")]
-    ToleranceLetter { text: String, letter: char, value: String },
+    ToleranceLetter {
+        text: String,
+        letter: char,
+        value: String,
+    },
     /// Two multipliers in one letter code.
     #[error("`{text}` has more than one multiplier letter")]
     TwoMultipliers { text: String, expected: Dimension },
@@ -59,17 +72,27 @@ impl QuantityError {
                 format!("write \"{value}\"; tolerances stand in [tolerance]")
             }
             Self::WrongUnit { unit, expected, .. } if unit == "m" => {
-                format!("m alone is metre; write for example \"{}\"", expected.example())
+                format!(
+                    "m alone is metre; write for example \"{}\"",
+                    expected.example()
+                )
             }
             Self::WrongUnit { unit, expected, .. } if unit.starts_with('K') && unit.len() > 1 => {
-                format!("kilo is a small k; write for example \"{}\"", expected.example())
+                format!(
+                    "kilo is a small k; write for example \"{}\"",
+                    expected.example()
+                )
             }
             Self::WrongUnit { expected, .. } if expected.unit().is_empty() => {
-                format!("write a number without a unit, for example {}", expected.example())
+                format!(
+                    "write a number without a unit, for example {}",
+                    expected.example()
+                )
             }
-            Self::NoUnit { expected: Dimension::SpectralIrradiance, .. } => {
-                "a bare number could be W/m²/nm or W/m³; write for example \"0.1 W/m²/nm\"".into()
-            }
+            Self::NoUnit {
+                expected: Dimension::SpectralIrradiance,
+                ..
+            } => "a bare number could be W/m²/nm or W/m³; write for example \"0.1 W/m²/nm\"".into(),
             Self::Empty { expected }
             | Self::NoNumber { expected, .. }
             | Self::Comma { expected, .. }
@@ -79,7 +102,9 @@ impl QuantityError {
             | Self::TooLarge { expected, .. }
             | Self::NotWhole { expected, .. }
             | Self::TwoMultipliers { expected, .. }
-            | Self::SignedCode { expected, .. } => format!("write for example \"{}\"", expected.example()),
+            | Self::SignedCode { expected, .. } => {
+                format!("write for example \"{}\"", expected.example())
+            }
         }
     }
 }

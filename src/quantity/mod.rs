@@ -78,7 +78,10 @@ mod tests {
     #[test]
     fn wrong_units_name_what_was_found() {
         let error = parse("5 m", Dimension::Ampere).unwrap_err();
-        assert_eq!(error.to_string(), "`5 m`: found a length in m, expected a current (A)");
+        assert_eq!(
+            error.to_string(),
+            "`5 m`: found a length in m, expected a current (A)"
+        );
         assert!(error.help().contains("m alone is metre"));
         for (text, dimension) in [
             ("60", Dimension::Angle),

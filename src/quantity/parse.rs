@@ -16,37 +16,62 @@ pub fn parse(text: &str, dimension: Dimension) -> Result<f64, QuantityError> {
     let text = plain(text);
     let whole = || written.trim().to_string();
     if text.is_empty() {
-        return Err(QuantityError::Empty { expected: dimension });
+        return Err(QuantityError::Empty {
+            expected: dimension,
+        });
     }
     match text.to_ascii_lowercase().as_str() {
         "inf" | "+inf" => return Ok(f64::INFINITY),
         "-inf" => return Ok(f64::NEG_INFINITY),
-        "nan" | "+nan" | "-nan" => return Err(QuantityError::NotANumber { text: whole(), expected: dimension }),
+        "nan" | "+nan" | "-nan" => {
+            return Err(QuantityError::NotANumber {
+                text: whole(),
+                expected: dimension,
+            });
+        }
         _ => {}
     }
     if text.contains(',') {
-        return Err(QuantityError::Comma { text: whole(), expected: dimension });
+        return Err(QuantityError::Comma {
+            text: whole(),
+            expected: dimension,
+        });
     }
     if let Some(coded) = letter_code::read(&text, dimension) {
         return coded;
     }
     let (number, rest) = split_number(&text);
     if number.is_empty() {
-        return Err(QuantityError::NoNumber { text: whole(), expected: dimension });
+        return Err(QuantityError::NoNumber {
+            text: whole(),
+            expected: dimension,
+        });
     }
     let unit = plain_unit(rest);
     let value = if unit.is_empty() {
         match dimension.bare_exponent() {
             Some(exponent) => shifted(number, exponent),
-            None => return Err(QuantityError::NoUnit { text: whole(), expected: dimension }),
+            None => {
+                return Err(QuantityError::NoUnit {
+                    text: whole(),
+                    expected: dimension,
+                });
+            }
         }
     } else {
         match in_unit(number, &unit, dimension) {
             Some(value) => value,
             None => {
-                let found = Dimension::ALL.into_iter().find(|&other| in_unit(number, &unit, other).is_some());
+                let found = Dimension::ALL
+                    .into_iter()
+                    .find(|&other| in_unit(number, &unit, other).is_some());
                 let unit = rest.trim().to_string();
-                return Err(QuantityError::WrongUnit { text: whole(), unit, found, expected: dimension });
+                return Err(QuantityError::WrongUnit {
+                    text: whole(),
+                    unit,
+                    found,
+                    expected: dimension,
+                });
             }
         }
     };
@@ -60,7 +85,10 @@ pub fn parse(text: &str, dimension: Dimension) -> Result<f64, QuantityError> {
 pub fn bare(text: &str, dimension: Dimension) -> Result<f64, QuantityError> {
     let plain: String = text.chars().filter(|c| *c != '_').collect();
     let Some(exponent) = dimension.bare_exponent() else {
-        return Err(QuantityError::NoUnit { text: text.to_string(), expected: dimension });
+        return Err(QuantityError::NoUnit {
+            text: text.to_string(),
+            expected: dimension,
+        });
     };
     match plain.as_str() {
         "inf" | "+inf" => return Ok(f64::INFINITY),
@@ -69,17 +97,26 @@ pub fn bare(text: &str, dimension: Dimension) -> Result<f64, QuantityError> {
     }
     let (number, rest) = split_number(&plain);
     if number.is_empty() || !rest.is_empty() {
-        return Err(QuantityError::NotANumber { text: text.to_string(), expected: dimension });
+        return Err(QuantityError::NotANumber {
+            text: text.to_string(),
+            expected: dimension,
+        });
     }
     finish(shifted(number, exponent), text, dimension)
 }
 
 fn finish(value: f64, text: &str, dimension: Dimension) -> Result<f64, QuantityError> {
     if !value.is_finite() {
-        return Err(QuantityError::TooLarge { text: text.to_string(), expected: dimension });
+        return Err(QuantityError::TooLarge {
+            text: text.to_string(),
+            expected: dimension,
+        });
     }
     if dimension == Dimension::Count && (value < 0.0 || value.fract() != 0.0) {
-        return Err(QuantityError::NotWhole { text: text.to_string(), expected: dimension });
+        return Err(QuantityError::NotWhole {
+            text: text.to_string(),
+            expected: dimension,
+        });
     }
     Ok(value)
 }
@@ -99,7 +136,10 @@ fn plain(text: &str) -> String {
 
 /// The unit without spaces, dots and carets, its words as signs: "nV/sqrt(Hz)" and "nV/rtHz" become "nV/√Hz", "cm^2" becomes "cm2".
 pub(super) fn plain_unit(text: &str) -> String {
-    let mut unit: String = text.chars().filter(|c| !c.is_whitespace() && !"^·*".contains(*c)).collect();
+    let mut unit: String = text
+        .chars()
+        .filter(|c| !c.is_whitespace() && !"^·*".contains(*c))
+        .collect();
     for (from, to) in [
         ("²", "2"),
         ("³", "3"),
@@ -131,7 +171,12 @@ pub(super) fn plain_unit(text: &str) -> String {
 /// Splits a leading decimal number (sign, digits, point, exponent) from what follows; the number is empty when there is none.
 pub(super) fn split_number(text: &str) -> (&str, &str) {
     let bytes = text.as_bytes();
-    let digits = |from: usize| bytes[from..].iter().take_while(|b| b.is_ascii_digit()).count();
+    let digits = |from: usize| {
+        bytes[from..]
+            .iter()
+            .take_while(|b| b.is_ascii_digit())
+            .count()
+    };
     let mut end = usize::from(matches!(bytes.first(), Some(b'+' | b'-')));
     let whole = digits(end);
     end += whole;
@@ -145,7 +190,9 @@ pub(super) fn split_number(text: &str) -> (&str, &str) {
     }
     if matches!(bytes.get(end), Some(b'e' | b'E')) {
         let sign = usize::from(matches!(bytes.get(end + 1), Some(b'+' | b'-')));
-        let exponent = bytes.get(end + 1 + sign..).map_or(0, |_| digits(end + 1 + sign));
+        let exponent = bytes
+            .get(end + 1 + sign..)
+            .map_or(0, |_| digits(end + 1 + sign));
         if exponent > 0 {
             end += 1 + sign + exponent;
         }
@@ -156,11 +203,18 @@ pub(super) fn split_number(text: &str) -> (&str, &str) {
 /// The decimal number times a power of ten, rounded once.
 pub(super) fn shifted(number: &str, exponent: i32) -> f64 {
     let (digits, own) = match number.find(['e', 'E']) {
-        Some(at) => (&number[..at], number[at + 1..].parse::<i64>().unwrap_or(i64::from(i32::MAX))),
+        Some(at) => (
+            &number[..at],
+            number[at + 1..]
+                .parse::<i64>()
+                .unwrap_or(i64::from(i32::MAX)),
+        ),
         None => (number, 0),
     };
     // The scan admits only decimal numbers, so this cannot fail; NaN would be refused by the caller.
-    format!("{digits}e{}", own.saturating_add(i64::from(exponent))).parse().unwrap_or(f64::NAN)
+    format!("{digits}e{}", own.saturating_add(i64::from(exponent)))
+        .parse()
+        .unwrap_or(f64::NAN)
 }
 
 fn in_unit(number: &str, unit: &str, dimension: Dimension) -> Option<f64> {
@@ -177,7 +231,9 @@ fn in_unit(number: &str, unit: &str, dimension: Dimension) -> Option<f64> {
         if known.prefix_power == 0 {
             continue;
         }
-        let Some(prefix) = unit.strip_suffix(known.text) else { continue };
+        let Some(prefix) = unit.strip_suffix(known.text) else {
+            continue;
+        };
         let kilo_ohm = dimension == Dimension::Ohm && prefix == "K";
         let tera = prefix == "T";
         for (name, power) in PREFIXES {

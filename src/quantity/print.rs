@@ -3,8 +3,17 @@
 use super::Dimension;
 use super::parse::degrees;
 
-const PREFIXED: [(&str, i32); 9] =
-    [("f", -15), ("p", -12), ("n", -9), ("µ", -6), ("m", -3), ("", 0), ("k", 3), ("M", 6), ("G", 9)];
+const PREFIXED: [(&str, i32); 9] = [
+    ("f", -15),
+    ("p", -12),
+    ("n", -9),
+    ("µ", -6),
+    ("m", -3),
+    ("", 0),
+    ("k", 3),
+    ("M", 6),
+    ("G", 9),
+];
 
 /// The value as an engineer writes it: the shortest digits that read back to the same bits, with a prefix where one fits.
 ///
@@ -12,7 +21,11 @@ const PREFIXED: [(&str, i32); 9] =
 /// in radians.
 pub fn format(value: f64, dimension: Dimension) -> String {
     if value.is_infinite() {
-        return if value > 0.0 { "inf".into() } else { "-inf".into() };
+        return if value > 0.0 {
+            "inf".into()
+        } else {
+            "-inf".into()
+        };
     }
     if value.is_nan() {
         return "NaN".into();
@@ -23,7 +36,11 @@ pub fn format(value: f64, dimension: Dimension) -> String {
     let (digits, leading) = shortest(value);
     let (unit, shift) = chosen_unit(dimension, leading, value == 0.0);
     let number = placed(value.is_sign_negative(), &digits, leading - shift);
-    if unit.is_empty() { number } else { format!("{number} {unit}") }
+    if unit.is_empty() {
+        number
+    } else {
+        format!("{number} {unit}")
+    }
 }
 
 /// The shortest digits of |value| and the power of ten of the first.
@@ -37,7 +54,11 @@ fn shortest(value: f64) -> (String, i32) {
 fn placed(negative: bool, digits: &str, leading: i32) -> String {
     let sign = if negative { "-" } else { "" };
     if !(-4..=8).contains(&leading) {
-        let fraction = if digits.len() > 1 { format!(".{}", &digits[1..]) } else { String::new() };
+        let fraction = if digits.len() > 1 {
+            format!(".{}", &digits[1..])
+        } else {
+            String::new()
+        };
         return format!("{sign}{}{fraction}e{leading}", &digits[..1]);
     }
     if leading < 0 {
@@ -55,10 +76,13 @@ fn placed(negative: bool, digits: &str, leading: i32) -> String {
 fn chosen_unit(dimension: Dimension, leading: i32, zero: bool) -> (String, i32) {
     let fixed = |unit: &str, shift: i32| (unit.to_string(), shift);
     match dimension {
-        Dimension::Kelvin | Dimension::Decibel | Dimension::DecibelPerHertz | Dimension::DecibelPerMetre => {
+        Dimension::Kelvin
+        | Dimension::Decibel
+        | Dimension::DecibelPerHertz
+        | Dimension::DecibelPerMetre => fixed(dimension.unit(), 0),
+        Dimension::KelvinPerWatt | Dimension::Speed | Dimension::Loudness | Dimension::Cn2 => {
             fixed(dimension.unit(), 0)
         }
-        Dimension::KelvinPerWatt | Dimension::Speed | Dimension::Loudness | Dimension::Cn2 => fixed(dimension.unit(), 0),
         Dimension::Number | Dimension::Count | Dimension::Angle => fixed("", 0),
         Dimension::DecibelPerKilometre => fixed("dB/km", -3),
         Dimension::Share => fixed("%", -2),
@@ -75,7 +99,12 @@ fn chosen_unit(dimension: Dimension, leading: i32, zero: bool) -> (String, i32) 
 /// The largest prefix, raised to `power`, that leaves a digit before the point; the bare unit beyond the prefixes.
 fn powered(unit: &str, power: i32, leading: i32) -> (String, i32) {
     let fits = |(_, exponent): &&(&str, i32)| exponent * power <= leading;
-    match PREFIXED.iter().rev().filter(|(_, exponent)| power == 1 || *exponent <= 0).find(fits) {
+    match PREFIXED
+        .iter()
+        .rev()
+        .filter(|(_, exponent)| power == 1 || *exponent <= 0)
+        .find(fits)
+    {
         Some((prefix, exponent)) if leading < 18 => (format!("{prefix}{unit}"), exponent * power),
         _ => (unit.to_string(), 0),
     }

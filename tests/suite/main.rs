@@ -2,3 +2,4 @@
 
 mod resampling;
 mod wav;
+mod design;

@@ -30,11 +30,20 @@ pub struct Range {
 
 impl Range {
     const fn new(low: f64, with_low: bool, high: f64, with_high: bool) -> Range {
-        Range { low, with_low, high, with_high, infinite: false }
+        Range {
+            low,
+            with_low,
+            high,
+            with_high,
+            infinite: false,
+        }
     }
 
     const fn or_infinite(self) -> Range {
-        Range { infinite: true, ..self }
+        Range {
+            infinite: true,
+            ..self
+        }
     }
 
     /// Whether the value may stand.
@@ -42,8 +51,16 @@ impl Range {
         if value.is_infinite() {
             return self.infinite && value > 0.0;
         }
-        let above = if self.with_low { value >= self.low } else { value > self.low };
-        let below = if self.with_high { value <= self.high } else { value < self.high };
+        let above = if self.with_low {
+            value >= self.low
+        } else {
+            value > self.low
+        };
+        let below = if self.with_high {
+            value <= self.high
+        } else {
+            value < self.high
+        };
         above && below
     }
 
@@ -57,9 +74,21 @@ impl Range {
             (true, false) => format!("{} or more", value(self.low)),
             (false, true) => format!("{} or less", value(self.high)),
             (true, true) => {
-                let low = if self.low == 0.0 { "0".to_string() } else { value(self.low) };
-                let low = if self.with_low { format!("from {low}") } else { format!("more than {low}") };
-                let high = if self.with_high { "up to" } else { "to less than" };
+                let low = if self.low == 0.0 {
+                    "0".to_string()
+                } else {
+                    value(self.low)
+                };
+                let low = if self.with_low {
+                    format!("from {low}")
+                } else {
+                    format!("more than {low}")
+                };
+                let high = if self.with_high {
+                    "up to"
+                } else {
+                    "to less than"
+                };
                 format!("{low} {high} {}", value(self.high))
             }
         };
@@ -89,7 +118,12 @@ pub enum What {
     /// One number.
     Number(Dimension, Range),
     /// One number or several, between `fewest` and `most` of them.
-    Numbers { dimension: Dimension, range: Range, fewest: usize, most: usize },
+    Numbers {
+        dimension: Dimension,
+        range: Range,
+        fewest: usize,
+        most: usize,
+    },
     /// A supply: one positive voltage, or two rails; kept in the order low, high.
     Supply,
     /// Pairs of numbers, at least two, each column of its own dimension and range, the first column rising.
@@ -134,37 +168,89 @@ pub struct Key {
     pub meaning: &'static str,
 }
 
-const fn number(name: &'static str, dimension: Dimension, range: Range, example: &'static str, meaning: &'static str) -> Key {
-    Key { name, what: What::Number(dimension, range), absent: Absent::Required, example, meaning }
+const fn number(
+    name: &'static str,
+    dimension: Dimension,
+    range: Range,
+    example: &'static str,
+    meaning: &'static str,
+) -> Key {
+    Key {
+        name,
+        what: What::Number(dimension, range),
+        absent: Absent::Required,
+        example,
+        meaning,
+    }
 }
 
-const fn word(name: &'static str, words: &'static [&'static str], example: &'static str, meaning: &'static str) -> Key {
-    Key { name, what: What::Word(words), absent: Absent::Required, example, meaning }
+const fn word(
+    name: &'static str,
+    words: &'static [&'static str],
+    example: &'static str,
+    meaning: &'static str,
+) -> Key {
+    Key {
+        name,
+        what: What::Word(words),
+        absent: Absent::Required,
+        example,
+        meaning,
+    }
 }
 
 const fn text(name: &'static str, example: &'static str, meaning: &'static str) -> Key {
-    Key { name, what: What::Text, absent: Absent::Nothing, example, meaning }
+    Key {
+        name,
+        what: What::Text,
+        absent: Absent::Nothing,
+        example,
+        meaning,
+    }
 }
 
-const fn table(name: &'static str, keys: &'static [Key], example: &'static str, meaning: &'static str) -> Key {
-    Key { name, what: What::Table(keys), absent: Absent::Nothing, example, meaning }
+const fn table(
+    name: &'static str,
+    keys: &'static [Key],
+    example: &'static str,
+    meaning: &'static str,
+) -> Key {
+    Key {
+        name,
+        what: What::Table(keys),
+        absent: Absent::Nothing,
+        example,
+        meaning,
+    }
 }
 
 impl Key {
     const fn or(self, value: f64) -> Key {
-        Key { absent: Absent::Value(value), ..self }
+        Key {
+            absent: Absent::Value(value),
+            ..self
+        }
     }
 
     const fn or_word(self, value: &'static str) -> Key {
-        Key { absent: Absent::Word(value), ..self }
+        Key {
+            absent: Absent::Word(value),
+            ..self
+        }
     }
 
     const fn optional(self) -> Key {
-        Key { absent: Absent::Nothing, ..self }
+        Key {
+            absent: Absent::Nothing,
+            ..self
+        }
     }
 
     const fn or_infinite(self) -> Key {
-        Key { absent: Absent::Infinite, ..self }
+        Key {
+            absent: Absent::Infinite,
+            ..self
+        }
     }
 
     /// The dimension of its numbers, where it has one.

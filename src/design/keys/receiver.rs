@@ -6,8 +6,20 @@ use Dimension::*;
 
 const FILTER: &[Key] = &[
     number("centre", Metre, POSITIVE, "\"940 nm\"", "of the pass band"),
-    number("width", Metre, POSITIVE, "\"50 nm\"", "full width at half transmission"),
-    number("transmission", Share, POSITIVE_SHARE, "0.85", "inside the pass band"),
+    number(
+        "width",
+        Metre,
+        POSITIVE,
+        "\"50 nm\"",
+        "full width at half transmission",
+    ),
+    number(
+        "transmission",
+        Share,
+        POSITIVE_SHARE,
+        "0.85",
+        "inside the pass band",
+    ),
 ];
 
 pub(super) static OPTICS: Spec = Spec {
@@ -20,18 +32,49 @@ pub(super) static OPTICS: Spec = Spec {
         name: "",
         meaning: "",
         keys: &[
-            number("aperture", Metre, POSITIVE, "\"12 mm\"", "diameter of the lens or window").optional(),
-            number("area", SquareMetre, POSITIVE, "\"1 cm²\"", "of the lens or window, in place of its diameter").optional(),
-            number("field_of_view", Angle, HALF_SPACE, "\"20°\"", "half angle; the whole half-space when absent").optional(),
+            number(
+                "aperture",
+                Metre,
+                POSITIVE,
+                "\"12 mm\"",
+                "diameter of the lens or window",
+            )
+            .optional(),
+            number(
+                "area",
+                SquareMetre,
+                POSITIVE,
+                "\"1 cm²\"",
+                "of the lens or window, in place of its diameter",
+            )
+            .optional(),
+            number(
+                "field_of_view",
+                Angle,
+                HALF_SPACE,
+                "\"20°\"",
+                "half angle; the whole half-space when absent",
+            )
+            .optional(),
             table(
                 "filter",
                 FILTER,
                 "{ centre = \"940 nm\", width = \"50 nm\", transmission = 0.85 }",
                 "optical filter; none when absent",
             ),
-            number("concentrator_index", Number, FROM_ONE, "1.5", "refractive index of a concentrator; 1 is none").or(1.0),
+            number(
+                "concentrator_index",
+                Number,
+                FROM_ONE,
+                "1.5",
+                "refractive index of a concentrator; 1 is none",
+            )
+            .or(1.0),
         ],
-        choices: &[Choice { ways: &[&["aperture"], &["area"]], needed: false }],
+        choices: &[Choice {
+            ways: &[&["aperture"], &["area"]],
+            needed: false,
+        }],
         class: None,
     }],
 };
@@ -41,23 +84,46 @@ pub(super) static DETECTOR: Spec = Spec {
     meaning: "What turns light back into current",
     many: false,
     required: true,
-    common: &[number("count", Count, FROM_ONE, "1", "identical detectors in parallel").or(1.0)],
+    common: &[number(
+        "count",
+        Count,
+        FROM_ONE,
+        "1",
+        "identical detectors in parallel",
+    )
+    .or(1.0)],
     kinds: &[
         Kind {
             name: "photodiode",
             meaning: "a photodiode",
             keys: &[],
-            choices: &[Choice { ways: &[&["responsivity"], &["quantum_efficiency"]], needed: true }],
+            choices: &[Choice {
+                ways: &[&["responsivity"], &["quantum_efficiency"]],
+                needed: true,
+            }],
             class: Some(&PHOTODIODE),
         },
         Kind {
             name: "phototransistor",
             meaning: "a phototransistor",
-            keys: &[number("base_resistor", Ohm, POSITIVE_INF, "\"1 MΩ\"", "from base to emitter; infinite when absent").or_infinite()],
+            keys: &[number(
+                "base_resistor",
+                Ohm,
+                POSITIVE_INF,
+                "\"1 MΩ\"",
+                "from base to emitter; infinite when absent",
+            )
+            .or_infinite()],
             choices: &[],
             class: Some(&PHOTOTRANSISTOR),
         },
-        Kind { name: "photocell", meaning: "a photovoltaic cell", keys: &[], choices: &[], class: Some(&PHOTOCELL) },
+        Kind {
+            name: "photocell",
+            meaning: "a photovoltaic cell",
+            keys: &[],
+            choices: &[],
+            class: Some(&PHOTOCELL),
+        },
     ],
 };
 
@@ -68,8 +134,14 @@ pub(super) const SUPPLY: Key = Key {
     example: "\"9 V\"",
     meaning: "one voltage (rails 0 and it) or two rails [\"-5 V\", \"5 V\"]",
 };
-pub(super) const REFERENCE: Key =
-    number("reference", Volt, ANY, "\"4.5 V\"", "half a single supply, 0 of a split one when absent").optional();
+pub(super) const REFERENCE: Key = number(
+    "reference",
+    Volt,
+    ANY,
+    "\"4.5 V\"",
+    "half a single supply, 0 of a split one when absent",
+)
+.optional();
 
 pub(super) static FRONT_END: Spec = Spec {
     path: "receiver.front_end",

@@ -5,7 +5,13 @@ use super::*;
 use Dimension::*;
 
 const SERVO: &[Key] = &[
-    number("bandwidth", Hertz, POSITIVE, "\"100 kHz\"", "where the loop gain has fallen to 1/√2"),
+    number(
+        "bandwidth",
+        Hertz,
+        POSITIVE,
+        "\"100 kHz\"",
+        "where the loop gain has fallen to 1/√2",
+    ),
     number("gain", Number, POSITIVE, "20", "loop gain at low frequency"),
 ];
 
@@ -16,14 +22,32 @@ pub(super) static DRIVER: Spec = Spec {
     required: true,
     common: &[
         number("supply", Volt, POSITIVE, "\"9 V\"", "supply"),
-        number("input_resistance", Ohm, POSITIVE_INF, "\"100 kΩ\"", "load on what drives it; infinite when absent").or_infinite(),
-        table("servo", SERVO, "{ bandwidth = \"100 kHz\", gain = 20 }", "feedback from a monitor photodiode"),
+        number(
+            "input_resistance",
+            Ohm,
+            POSITIVE_INF,
+            "\"100 kΩ\"",
+            "load on what drives it; infinite when absent",
+        )
+        .or_infinite(),
+        table(
+            "servo",
+            SERVO,
+            "{ bandwidth = \"100 kHz\", gain = 20 }",
+            "feedback from a monitor photodiode",
+        ),
     ],
     kinds: &[
         Kind {
             name: "series-resistor",
             meaning: "the audio in series with supply, resistor and emitter",
-            keys: &[number("resistor", Ohm, NON_NEGATIVE, "\"330 Ω\"", "in series with the emitter")],
+            keys: &[number(
+                "resistor",
+                Ohm,
+                NON_NEGATIVE,
+                "\"330 Ω\"",
+                "in series with the emitter",
+            )],
             choices: &[],
             class: None,
         },
@@ -32,9 +56,21 @@ pub(super) static DRIVER: Spec = Spec {
             meaning: "a bias current that the audio voltage moves",
             keys: &[
                 number("bias", Ampere, POSITIVE, "\"20 mA\"", "current at rest"),
-                number("slope", Transconductance, POSITIVE, "\"16 mA/V\"", "current for each volt"),
+                number(
+                    "slope",
+                    Transconductance,
+                    POSITIVE,
+                    "\"16 mA/V\"",
+                    "current for each volt",
+                ),
                 number("sense", Ohm, NON_NEGATIVE, "\"10 Ω\"", "sense resistor"),
-                number("saturation", Volt, NON_NEGATIVE, "\"0.3 V\"", "least voltage across the sink"),
+                number(
+                    "saturation",
+                    Volt,
+                    NON_NEGATIVE,
+                    "\"0.3 V\"",
+                    "least voltage across the sink",
+                ),
             ],
             choices: &[],
             class: None,
@@ -43,9 +79,28 @@ pub(super) static DRIVER: Spec = Spec {
             name: "transistor",
             meaning: "a common-emitter modulator",
             keys: &[
-                number("bias", Ampere, POSITIVE, "\"20 mA\"", "collector current at rest"),
-                number("emitter_resistor", Ohm, NON_NEGATIVE, "\"33 Ω\"", "in the emitter"),
-                number("bias_resistance", Ohm, POSITIVE_INF, "\"10 kΩ\"", "of the base divider; infinite when absent").or_infinite(),
+                number(
+                    "bias",
+                    Ampere,
+                    POSITIVE,
+                    "\"20 mA\"",
+                    "collector current at rest",
+                ),
+                number(
+                    "emitter_resistor",
+                    Ohm,
+                    NON_NEGATIVE,
+                    "\"33 Ω\"",
+                    "in the emitter",
+                ),
+                number(
+                    "bias_resistance",
+                    Ohm,
+                    POSITIVE_INF,
+                    "\"10 kΩ\"",
+                    "of the base divider; infinite when absent",
+                )
+                .or_infinite(),
             ],
             choices: &[],
             class: Some(&BIPOLAR),
@@ -58,7 +113,14 @@ pub(super) static EMITTER: Spec = Spec {
     meaning: "The LED",
     many: false,
     required: true,
-    common: &[number("count", Count, FROM_ONE, "1", "identical LEDs in series whose light adds").or(1.0)],
+    common: &[number(
+        "count",
+        Count,
+        FROM_ONE,
+        "1",
+        "identical LEDs in series whose light adds",
+    )
+    .or(1.0)],
     kinds: &[Kind {
         name: "",
         meaning: "",
@@ -70,8 +132,17 @@ pub(super) static EMITTER: Spec = Spec {
             meaning: "measured light for each current, in place of the flux law",
         }],
         choices: &[
-            Choice { ways: &[&["half_angle"], &["divergence"]], needed: true },
-            Choice { ways: &[&["flux", "at_current", "low_current", "droop_current"], &["curve"]], needed: true },
+            Choice {
+                ways: &[&["half_angle"], &["divergence"]],
+                needed: true,
+            },
+            Choice {
+                ways: &[
+                    &["flux", "at_current", "low_current", "droop_current"],
+                    &["curve"],
+                ],
+                needed: true,
+            },
         ],
         class: Some(&EMITTER_PART),
     }],
