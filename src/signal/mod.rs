@@ -4,4 +4,6 @@
 
 pub mod noise;
 pub mod resample;
+pub mod spectrum;
+pub mod tone;
 pub mod wav;

@@ -1,4 +1,6 @@
 //! The outside checks, one binary: a module a topic.
 
+mod figure_methods;
+mod noise_streams;
 mod resampling;
 mod wav;
