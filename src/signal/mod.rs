@@ -6,4 +6,6 @@ pub mod implicit;
 pub mod noise;
 pub mod pole;
 pub mod resample;
+pub mod spectrum;
+pub mod tone;
 pub mod wav;

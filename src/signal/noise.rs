@@ -1,8 +1,12 @@
 //! Streams of random numbers, one for each cause of noise, and the shaping of white noise into 1/f noise.
 
+mod flicker;
+
 use rand::rngs::Xoshiro256PlusPlus;
 use rand::{RngExt, SeedableRng};
 use rand_distr::StandardNormal;
+
+pub use flicker::FlickerShaper;
 
 /// The generator of one cause of noise. The same four arguments give the same stream on every machine; a change in any one
 /// of them gives another, so that silencing one cause leaves the draws of all others as they were.
