@@ -9,6 +9,7 @@ mod error;
 mod letter_code;
 mod parse;
 mod print;
+mod show;
 
 pub use dimension::Dimension;
 pub use error::QuantityError;

@@ -108,7 +108,7 @@ pub fn render(link: &Link, job: &Job, mut progress: impl FnMut(u64, u64)) -> Res
     let mut reader = WavReader::open(&job.input)?;
     let from = reader.spec();
     let channels = if job.mono { 1 } else { from.channels };
-    let format = job.format.unwrap_or(if job.stems { SampleFormat::Float32 } else { from.format.writable() });
+    let format = job.format.unwrap_or(if job.stems { SampleFormat::Float32 } else { from.format });
     let spec = WavSpec { rate: from.rate, channels, format };
     let mut paths = vec![job.output.clone()];
     if job.stems {

@@ -14,6 +14,8 @@ pub struct Lamp {
     kind: String,
     /// Mean photocurrent, A.
     mean: f64,
+    /// Hz
+    mains: f64,
     /// Relative flicker: (frequency Hz, depth, phase rad) of each line, value mean·depth·cos(2πft + phase).
     lines: Vec<(f64, f64, f64)>,
 }
@@ -61,12 +63,17 @@ impl Lamp {
             let phase = section.number("phase");
             lines.push((2.0 * section.number("mains"), section.number("ripple"), 2.0 * phase));
         }
-        Ok(Self { path: section.path.clone(), kind, mean, lines })
+        Ok(Self { path: section.path.clone(), kind, mean, mains: section.number("mains"), lines })
     }
 
     /// Mean photocurrent, A.
     pub fn mean(&self) -> f64 {
         self.mean
+    }
+
+    /// Mains frequency that it hangs on, Hz.
+    pub fn mains(&self) -> f64 {
+        self.mains
     }
 
     /// Its place in the design.

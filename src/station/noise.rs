@@ -96,7 +96,7 @@ impl NoiseSource {
         self.buffer.iter_mut().for_each(|x| *x *= self.scale);
         if let Some(flicker) = &mut self.flicker {
             for x in &mut self.buffer {
-                *x += flicker.scale * flicker.shaper.step(flicker.stream.draw());
+                *x += flicker.scale * flicker.shaper.shape(flicker.stream.draw());
             }
         }
         if let Some(shape) = &mut self.shape {
