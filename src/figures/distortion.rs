@@ -8,7 +8,7 @@ const BETA: f64 = 24.0;
 /// Half a main lobe in bins, with one to spare, rounded up.
 const LOBE_BINS: f64 = 9.0;
 /// A fundamental smaller than this share of the record's largest value is rounding, not a tone.
-const ABSENT: f64 = 1e-12;
+pub(super) const ABSENT: f64 = 1e-12;
 
 /// Total harmonic distortion (over the fundamental) that the method itself shows for a pure tone in double precision, as a ratio: −190 dB. The tests
 /// measure −199.8 dB at worst, on and between bins, from 18 periods to 9000.

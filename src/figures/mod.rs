@@ -6,6 +6,7 @@
 pub mod band;
 pub mod distortion;
 pub mod hum;
+pub mod intermodulation;
 pub mod noise;
 pub mod programme;
 pub mod weighting;

@@ -6,6 +6,7 @@ use serde::Serialize;
 
 use super::decibels;
 use super::distortion::{Distortion, Residue, THD_FLOOR, THD_N_FLOOR};
+use super::intermodulation;
 use super::noise::{IdleNoise, snr_db};
 
 /// The figures, each under its contract's name with its unit. One that does not apply or was not asked for is `None` (null), never 0.
@@ -62,6 +63,17 @@ impl Figures {
         let thd_n = self.floored(residue.thd_n(), THD_N_FLOOR, &["thd_n_percent", "sinad_db"]);
         self.thd_n_percent = Some(100.0 * thd_n);
         self.sinad_db = Some(-decibels(thd_n));
+    }
+
+    /// Takes over the two kinds of intermodulation (ratios), each at the method's floor where it is below.
+    pub fn set_intermodulation(&mut self, modulation: Option<f64>, twin_tone: Option<f64>) {
+        let mut percent = |value: Option<f64>, key| {
+            value.map(|v| 100.0 * self.floored(v, intermodulation::FLOOR, &[key]))
+        };
+        let smpte = percent(modulation, "imd_smpte_percent");
+        let twin = percent(twin_tone, "imd_twin_tone_percent");
+        self.imd_smpte_percent = smpte;
+        self.imd_twin_tone_percent = twin;
     }
 
     /// Takes over the fundamental (volts rms) and the idle noise, and their ratios. Without noise there is no ratio, and that is said.
