@@ -69,7 +69,11 @@ impl From<miette::Report> for Failure {
 
 impl From<RenderError> for Failure {
     fn from(e: RenderError) -> Self {
-        if e.is_machine_fault() { Self::Machine(e.into()) } else { Self::Input(e.into()) }
+        if e.is_machine_fault() {
+            Self::Machine(e.into())
+        } else {
+            Self::Input(e.into())
+        }
     }
 }
 
@@ -117,9 +121,12 @@ fn conclude(
     let bench = Bench::of(design);
     let mut measured = measure(link, &bench, seed);
     if let Some(p) = programme {
-        measured.figures.clipped_samples = Some(p.channels.iter().map(|c| c.received.clipped()).sum());
+        measured.figures.clipped_samples =
+            Some(p.channels.iter().map(|c| c.received.clipped()).sum());
     } else {
-        measured.figures.explain("clipped_samples", "no programme was rendered");
+        measured
+            .figures
+            .explain("clipped_samples", "no programme was rendered");
     }
     let budget = budget(link, bench.band);
     let lamps = link.lamps().iter().any(|l| l.lines().next().is_some());
@@ -140,7 +147,8 @@ fn conclude(
         eprintln!("warning: {warning}");
     }
     if figures.is_some() || args.json {
-        let mut document = serde_json::to_string_pretty(&json::document(&findings)).unwrap_or_default();
+        let mut document =
+            serde_json::to_string_pretty(&json::document(&findings)).unwrap_or_default();
         document.push('\n');
         if let Some(path) = figures {
             write_whole(path, document.as_bytes())?;
@@ -176,7 +184,10 @@ fn print(text: &str) {
 
 /// Writes a file that appears whole or not at all.
 fn write_whole(path: &std::path::Path, bytes: &[u8]) -> Result<(), Failure> {
-    let folder = path.parent().filter(|p| !p.as_os_str().is_empty()).unwrap_or(std::path::Path::new("."));
+    let folder = path
+        .parent()
+        .filter(|p| !p.as_os_str().is_empty())
+        .unwrap_or(std::path::Path::new("."));
     let written = tempfile::NamedTempFile::new_in(folder).and_then(|mut file| {
         file.write_all(bytes)?;
         file.as_file().sync_all()?;
@@ -185,6 +196,10 @@ fn write_whole(path: &std::path::Path, bytes: &[u8]) -> Result<(), Failure> {
     });
     written.map_err(|e| {
         let report = miette::miette!("`{}` could not be written: {e}", path.display());
-        if e.kind() == ErrorKind::NotFound { Failure::Input(report) } else { Failure::Machine(report) }
+        if e.kind() == ErrorKind::NotFound {
+            Failure::Input(report)
+        } else {
+            Failure::Machine(report)
+        }
     })
 }

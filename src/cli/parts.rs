@@ -4,4 +4,6 @@ use std::process::ExitCode;
 #[derive(clap::Args)]
 pub struct Args {}
 /// Runs.
-pub fn run(_: &Args) -> Result<ExitCode, miette::Report> { Ok(ExitCode::SUCCESS) }
+pub fn run(_: &Args) -> Result<ExitCode, miette::Report> {
+    Ok(ExitCode::SUCCESS)
+}

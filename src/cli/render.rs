@@ -35,7 +35,12 @@ pub struct Args {
     #[arg(long)]
     bits: Option<Bits>,
     /// Change of level at the source, dB
-    #[arg(long, value_name = "DB", default_value = "0", allow_hyphen_values = true)]
+    #[arg(
+        long,
+        value_name = "DB",
+        default_value = "0",
+        allow_hyphen_values = true
+    )]
     drive: String,
     /// Samples of the link for each of the file: 1, 2, 4, 8, 16, 32 or auto
     #[arg(long, value_name = "N", default_value = "auto")]
@@ -74,12 +79,26 @@ pub fn run(args: &Args) -> Result<ExitCode, Failure> {
     let drive = crate::quantity::parse(&args.drive, crate::quantity::Dimension::Decibel)
         .ok()
         .filter(|db| db.is_finite() && db.abs() <= 200.0)
-        .ok_or_else(|| miette!(help = "a level in decibels from -200 to 200, as -6", "--drive {} is no such level", args.drive))?;
+        .ok_or_else(|| {
+            miette!(
+                help = "a level in decibels from -200 to 200, as -6",
+                "--drive {} is no such level",
+                args.drive
+            )
+        })?;
     let oversample = match args.oversample.as_str() {
         "auto" => None,
-        text => Some(text.parse().ok().filter(|n| [1, 2, 4, 8, 16, 32].contains(n)).ok_or_else(|| {
-            miette!(help = "1, 2, 4, 8, 16, 32 or auto", "--oversample {text} is no such number")
-        })?),
+        text => Some(
+            text.parse()
+                .ok()
+                .filter(|n| [1, 2, 4, 8, 16, 32].contains(n))
+                .ok_or_else(|| {
+                    miette!(
+                        help = "1, 2, 4, 8, 16, 32 or auto",
+                        "--oversample {text} is no such number"
+                    )
+                })?,
+        ),
     };
     let design = Design::load(&args.design.design, &args.design.sets)?;
     let link = Link::new(&design)?;
@@ -108,7 +127,14 @@ pub fn run(args: &Args) -> Result<ExitCode, Failure> {
         }
     });
     bar.finish_and_clear();
-    conclude(&args.design, &design, &link, Some(&outcome?), args.figures.as_deref(), to_terminal)
+    conclude(
+        &args.design,
+        &design,
+        &link,
+        Some(&outcome?),
+        args.figures.as_deref(),
+        to_terminal,
+    )
 }
 
 /// A bar on standard error, or nothing where that is no terminal.

@@ -20,8 +20,9 @@ const POINTS: usize = 400;
 /// Contributors that the design silences are left out. Small-signal: a link that limits makes other noise than this.
 pub fn budget(link: &Link, band: (f64, f64)) -> Vec<BudgetLine> {
     let (from, to) = (band.0.max(1e-3), band.1.max(1e-2));
-    let grid: Vec<f64> =
-        (0..POINTS).map(|k| from * (to / from).powf(k as f64 / (POINTS - 1) as f64)).collect();
+    let grid: Vec<f64> = (0..POINTS)
+        .map(|k| from * (to / from).powf(k as f64 / (POINTS - 1) as f64))
+        .collect();
     let mut powers: Vec<(String, f64)> = Vec::new();
     let mut add = |name: &str, power: f64| match powers.iter_mut().find(|p| p.0 == name) {
         Some(line) => line.1 += power,
@@ -44,14 +45,20 @@ pub fn budget(link: &Link, band: (f64, f64)) -> Vec<BudgetLine> {
         let power = lamp
             .lines()
             .filter(|(f, _)| (from..=to).contains(f))
-            .map(|(f, amplitude)| 0.5 * (amplitude * link.from_photocurrent(f)).powi(2))
+            .map(|(f, amplitude)| 0.5 * (amplitude * link.gain_after_light(f)).powi(2))
             .sum();
         add(&lamp.hum_name(), power);
     }
     powers.retain(|(name, power)| *power > 0.0 && !link.silence.contains(name));
     let total: f64 = powers.iter().map(|p| p.1).sum();
-    let mut lines: Vec<BudgetLine> =
-        powers.into_iter().map(|(name, p)| BudgetLine { name, rms: p.sqrt(), share: p / total }).collect();
+    let mut lines: Vec<BudgetLine> = powers
+        .into_iter()
+        .map(|(name, p)| BudgetLine {
+            name,
+            rms: p.sqrt(),
+            share: p / total,
+        })
+        .collect();
     lines.sort_by(|a, b| b.rms.total_cmp(&a.rms));
     lines
 }

@@ -25,9 +25,21 @@ pub struct StationEvents {
 impl Chain {
     pub(super) fn new(link: &Link, conditions: &Conditions) -> Self {
         Self {
-            runners: link.stations().iter().map(|s| s.runner(conditions)).collect(),
-            places: link.stations().iter().map(|s| s.path().to_owned()).collect(),
-            flickers: link.lamps().iter().filter_map(|l| l.flicker(conditions)).collect(),
+            runners: link
+                .stations()
+                .iter()
+                .map(|s| s.runner(conditions))
+                .collect(),
+            places: link
+                .stations()
+                .iter()
+                .map(|s| s.path().to_owned())
+                .collect(),
+            flickers: link
+                .lamps()
+                .iter()
+                .filter_map(|l| l.flicker(conditions))
+                .collect(),
             ambient: Vec::new(),
         }
     }
@@ -38,7 +50,9 @@ impl Chain {
             self.ambient.clear();
             if !self.flickers.is_empty() {
                 self.ambient.resize(slice.len(), 0.0);
-                self.flickers.iter_mut().for_each(|f| f.add_to(&mut self.ambient));
+                self.flickers
+                    .iter_mut()
+                    .for_each(|f| f.add_to(&mut self.ambient));
             }
             for runner in &mut self.runners {
                 runner.run(slice, &self.ambient);
@@ -53,7 +67,10 @@ impl Chain {
             let events = runner.events();
             match all.last_mut().filter(|last| last.path == *path) {
                 Some(last) => last.events.add(&events),
-                None => all.push(StationEvents { path: path.clone(), events }),
+                None => all.push(StationEvents {
+                    path: path.clone(),
+                    events,
+                }),
             }
         }
         all

@@ -64,12 +64,18 @@ impl Link {
 
     /// Small-signal transfer from the source's open-circuit volts to the output's volts at `frequency` (Hz).
     pub fn transfer(&self, frequency: f64) -> Complex64 {
-        self.stations[1..].iter().map(|s| s.transfer(frequency)).product()
+        self.stations[1..]
+            .iter()
+            .map(|s| s.transfer(frequency))
+            .product()
     }
 
     /// Output volts per ampere of photocurrent at `frequency` (Hz), in size.
-    fn from_photocurrent(&self, frequency: f64) -> f64 {
-        let onwards: f64 = self.stations[self.receiver..].iter().map(|s| s.transfer(frequency).norm()).product();
+    fn gain_after_light(&self, frequency: f64) -> f64 {
+        let onwards: f64 = self.stations[self.receiver..]
+            .iter()
+            .map(|s| s.transfer(frequency).norm())
+            .product();
         onwards / self.responsivity
     }
 
@@ -81,7 +87,10 @@ impl Link {
 
     /// The longest time constant along the way that a signal excites, s.
     pub fn slowest_time(&self) -> f64 {
-        self.stations.iter().map(|s| s.slowest_time()).fold(0.0, f64::max)
+        self.stations
+            .iter()
+            .map(|s| s.slowest_time())
+            .fold(0.0, f64::max)
     }
 
     /// Conditions of a whole run at `rate` (Hz) under `seed`: everything bends, sounds and flickers.

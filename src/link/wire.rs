@@ -27,7 +27,13 @@ pub fn wire(design: &Design) -> Result<Link, DesignError> {
     let mut drive = source.drive();
     let source_full_scale = source.full_scale();
     stations.push(Box::new(source));
-    drive = stages(&design.transmitter_stages, TransmitHead::input_load(&design.driver), drive, t, &mut stations)?;
+    drive = stages(
+        &design.transmitter_stages,
+        TransmitHead::input_load(&design.driver),
+        drive,
+        t,
+        &mut stations,
+    )?;
 
     let head = TransmitHead::new(&design.driver, &design.emitter, &drive, t);
     let (flux, max_current) = (head.flux(), head.max_current());
@@ -36,7 +42,13 @@ pub fn wire(design: &Design) -> Result<Link, DesignError> {
     let wavelength = design.emitter.number("wavelength");
     let detector = Detector::new(&design.detector, wavelength, t, vt);
     let optics = Optics::new(&design.optics, detector.area);
-    let path = AirPath::new(&design.path, &design.interruptions, &design.emitter, &optics, flux)?;
+    let path = AirPath::new(
+        &design.path,
+        &design.interruptions,
+        &design.emitter,
+        &optics,
+        flux,
+    )?;
     let received = path.received();
     stations.push(Box::new(path));
 
@@ -62,7 +74,13 @@ pub fn wire(design: &Design) -> Result<Link, DesignError> {
         drive = head.drive();
         stations.push(Box::new(head));
     }
-    drive = stages(receiver, Output::input_load(&design.output), drive, t, &mut stations)?;
+    drive = stages(
+        receiver,
+        Output::input_load(&design.output),
+        drive,
+        t,
+        &mut stations,
+    )?;
     let output = Output::new(&design.output, &drive);
     let output_full_scale = output.full_scale();
     stations.push(Box::new(output));
@@ -79,7 +97,8 @@ pub fn wire(design: &Design) -> Result<Link, DesignError> {
         warnings: Vec::new(),
     };
     if received <= 0.0 {
-        link.warnings.push("no light arrives at the detector: the output holds noise alone".into());
+        link.warnings
+            .push("no light arrives at the detector: the output holds noise alone".into());
     }
     link.warnings.extend(unknown_silence(&link));
     Ok(link)
@@ -90,7 +109,11 @@ fn units(sections: &[Section]) -> Vec<(&Section, usize)> {
     sections
         .iter()
         .flat_map(|s| {
-            let count = if s.kind.as_deref() == Some("opamp") { s.number("stages") as usize } else { 1 };
+            let count = if s.kind.as_deref() == Some("opamp") {
+                s.number("stages") as usize
+            } else {
+                1
+            };
             (0..count.max(1)).map(move |unit| (s, unit))
         })
         .collect()
@@ -107,7 +130,10 @@ fn stage_load(section: &Section, next: &Load) -> Load {
 
 /// What a row of stages shows to what drives it, `end` behind the last.
 fn input_load(sections: &[Section], end: Load) -> Load {
-    units(sections).iter().rev().fold(end, |next, (section, _)| stage_load(section, &next))
+    units(sections)
+        .iter()
+        .rev()
+        .fold(end, |next, (section, _)| stage_load(section, &next))
 }
 
 /// Adds a row of stages between `drive` and the load `end`; gives what the last one offers.
@@ -150,13 +176,21 @@ fn stages(
 /// Warnings for names under `silence` that no contributor of this link bears.
 fn unknown_silence(link: &Link) -> Vec<String> {
     let mut names: BTreeSet<String> = link.lamps.iter().map(Lamp::hum_name).collect();
-    names.extend(link.stations.iter().flat_map(|s| s.noise(1e3)).map(|share| share.name));
+    names.extend(
+        link.stations
+            .iter()
+            .flat_map(|s| s.noise(1e3))
+            .map(|share| share.name),
+    );
     link.silence
         .iter()
         .filter(|s| !names.contains(*s))
         .map(|s| {
             let all: Vec<&str> = names.iter().map(String::as_str).collect();
-            format!("silence: \"{s}\" is no noise contributor of this link; there are {}", all.join(", "))
+            format!(
+                "silence: \"{s}\" is no noise contributor of this link; there are {}",
+                all.join(", ")
+            )
         })
         .collect()
 }

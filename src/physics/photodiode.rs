@@ -101,7 +101,12 @@ impl Junction {
     /// opposed flows I_s and I_s·e^(−V/nV_T), which do not cancel as noises (van der Ziel).
     pub fn shot_current(&self, reverse: f64) -> f64 {
         let e = (-reverse / self.slope_voltage).min(Self::STEEPEST).exp();
-        self.saturation * (1.0 + e) + if reverse > 0.0 { self.dark * (1.0 - e) } else { 0.0 }
+        self.saturation * (1.0 + e)
+            + if reverse > 0.0 {
+                self.dark * (1.0 - e)
+            } else {
+                0.0
+            }
     }
 }
 

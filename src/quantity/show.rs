@@ -9,10 +9,18 @@ impl Dimension {
             return format(value, self);
         }
         // Angles are shown in degrees: round there.
-        let scale = if self == Dimension::Angle { 180.0 / std::f64::consts::PI } else { 1.0 };
+        let scale = if self == Dimension::Angle {
+            180.0 / std::f64::consts::PI
+        } else {
+            1.0
+        };
         let shown = value * scale;
         let rounded: f64 = format!("{shown:.3e}").parse().unwrap_or(shown);
-        if self == Dimension::Angle { format!("{rounded}°") } else { format(rounded, self) }
+        if self == Dimension::Angle {
+            format!("{rounded}°")
+        } else {
+            format(rounded, self)
+        }
     }
 }
 

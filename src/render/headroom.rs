@@ -32,7 +32,9 @@ pub fn headroom(link: &Link, bench: &Bench, conditions: &Conditions) -> Result<f
         return Err("a station limits without any signal".into());
     }
     if !limits(limited)? {
-        return Err(format!("no station limits up to {limited} dB above the level"));
+        return Err(format!(
+            "no station limits up to {limited} dB above the level"
+        ));
     }
     while limited - free > RESOLUTION {
         let middle = (free + limited) / 2.0;
@@ -46,17 +48,31 @@ pub fn headroom(link: &Link, bench: &Bench, conditions: &Conditions) -> Result<f
 }
 
 /// Whether anything limits with the tone `db` above its level.
-fn limits(link: &Link, bench: &Bench, conditions: &Conditions, straight: f64, db: f64) -> Result<bool, String> {
+fn limits(
+    link: &Link,
+    bench: &Bench,
+    conditions: &Conditions,
+    straight: f64,
+    db: f64,
+) -> Result<bool, String> {
     let peak = bench.peak() * 10f64.powf(db / 20.0);
     let period = TEST_RATE / bench.tone;
-    let (before, during) = ((PERIODS.0 * period).ceil() as usize, (PERIODS.1 * period).round() as usize);
+    let (before, during) = (
+        (PERIODS.0 * period).ceil() as usize,
+        (PERIODS.1 * period).round() as usize,
+    );
     let onset = PERIODS.0 / 2.0 / bench.tone;
     let mut samples = vec![0.0; before + during];
-    Tone::new(TEST_RATE, bench.tone, peak, onset).map_err(|e| e.to_string())?.fill(&mut samples);
+    Tone::new(TEST_RATE, bench.tone, peak, onset)
+        .map_err(|e| e.to_string())?
+        .fill(&mut samples);
     let mut chain = link.chain(conditions);
     chain.run(&mut samples);
     let events = chain.events();
-    if events.iter().any(|e| e.events.clipped + e.events.slewing + e.events.cut_off > 0) {
+    if events
+        .iter()
+        .any(|e| e.events.clipped + e.events.slewing + e.events.cut_off > 0)
+    {
         return Ok(true);
     }
     // The fundamental by correlation over whole periods.

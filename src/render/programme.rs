@@ -88,19 +88,28 @@ const AUTO_RATE: u32 = 320_000;
 
 /// The factor that `auto` chooses for a file's `rate`: 8 up to 48 kHz, 4 up to 96 kHz, 2 above.
 pub fn auto_oversample(rate: u32) -> u32 {
-    [2, 4].into_iter().find(|n| rate * n >= AUTO_RATE).unwrap_or(8)
+    [2, 4]
+        .into_iter()
+        .find(|n| rate * n >= AUTO_RATE)
+        .unwrap_or(8)
 }
 
 /// Path of the stem `name` beside `output`: received.wav → received.noise.wav.
 pub fn stem_path(output: &Path, name: &str) -> PathBuf {
-    let extension = output.extension().map_or("wav".into(), |e| e.to_string_lossy().into_owned());
+    let extension = output
+        .extension()
+        .map_or("wav".into(), |e| e.to_string_lossy().into_owned());
     output.with_extension(format!("{name}.{extension}"))
 }
 
 /// Renders `job` through `link`; `progress` hears of frames done and to do.
 ///
 /// The received file has the input's length and lines up with it to the sample. Outputs appear when all is done, or not at all.
-pub fn render(link: &Link, job: &Job, mut progress: impl FnMut(u64, u64)) -> Result<Outcome, RenderError> {
+pub fn render(
+    link: &Link,
+    job: &Job,
+    mut progress: impl FnMut(u64, u64),
+) -> Result<Outcome, RenderError> {
     let to_terminal = job.output.as_os_str() == "-";
     if job.stems && to_terminal {
         return Err(RenderError::StemsToStandardOutput);
@@ -108,13 +117,24 @@ pub fn render(link: &Link, job: &Job, mut progress: impl FnMut(u64, u64)) -> Res
     let mut reader = WavReader::open(&job.input)?;
     let from = reader.spec();
     let channels = if job.mono { 1 } else { from.channels };
-    let format = job.format.unwrap_or(if job.stems { SampleFormat::Float32 } else { from.format });
-    let spec = WavSpec { rate: from.rate, channels, format };
+    let format = job.format.unwrap_or(if job.stems {
+        SampleFormat::Float32
+    } else {
+        from.format
+    });
+    let spec = WavSpec {
+        rate: from.rate,
+        channels,
+        format,
+    };
     let mut paths = vec![job.output.clone()];
     if job.stems {
         paths.extend(["clean", "noise", "distortion"].map(|s| stem_path(&job.output, s)));
     }
-    if let Some(path) = paths.iter().find(|p| p.as_os_str() != "-" && same_file(&job.input, p)) {
+    if let Some(path) = paths
+        .iter()
+        .find(|p| p.as_os_str() != "-" && same_file(&job.input, p))
+    {
         return Err(RenderError::SameFile(path.clone()));
     }
     let mut writers = paths
@@ -141,11 +161,14 @@ pub fn render(link: &Link, job: &Job, mut progress: impl FnMut(u64, u64)) -> Res
             first[0].iter_mut().for_each(|x| *x *= share);
         }
         let last = frames == 0;
-        lanes.par_iter_mut().zip(&mut input).for_each(|(lane, sent)| {
-            lane.sent.add(sent);
-            sent.iter_mut().for_each(|x| *x *= gain);
-            lane.feed(sent, last);
-        });
+        lanes
+            .par_iter_mut()
+            .zip(&mut input)
+            .for_each(|(lane, sent)| {
+                lane.sent.add(sent);
+                sent.iter_mut().for_each(|x| *x *= gain);
+                lane.feed(sent, last);
+            });
         write_ready(&mut lanes, &mut writers)?;
         done += frames as u64;
         progress(done, total);
@@ -168,17 +191,39 @@ pub fn render(link: &Link, job: &Job, mut progress: impl FnMut(u64, u64)) -> Res
 
 /// Writes what every run of every channel has ready, and measures it.
 fn write_ready(lanes: &mut [Lane], writers: &mut [WavWriter]) -> Result<(), RenderError> {
-    let ready = lanes.iter().flat_map(|l| &l.runs).map(|r| r.ready.len()).min().unwrap_or(0);
+    let ready = lanes
+        .iter()
+        .flat_map(|l| &l.runs)
+        .map(|r| r.ready.len())
+        .min()
+        .unwrap_or(0);
     let mut tracks: Vec<Vec<Vec<f64>>> = vec![Vec::new(); writers.len()];
     for lane in lanes.iter_mut() {
-        let mut parts: Vec<Vec<f64>> = lane.runs.iter_mut().map(|r| r.ready.drain(..ready).collect()).collect();
+        let mut parts: Vec<Vec<f64>> = lane
+            .runs
+            .iter_mut()
+            .map(|r| r.ready.drain(..ready).collect())
+            .collect();
         lane.received.add(&parts[0]);
         if let [full, noiseless, clean] = &mut parts[..] {
-            let noise: Vec<f64> = full.iter().zip(noiseless.iter()).map(|(a, b)| a - b).collect();
-            let distortion: Vec<f64> = noiseless.iter().zip(clean.iter()).map(|(a, b)| a - b).collect();
+            let noise: Vec<f64> = full
+                .iter()
+                .zip(noiseless.iter())
+                .map(|(a, b)| a - b)
+                .collect();
+            let distortion: Vec<f64> = noiseless
+                .iter()
+                .zip(clean.iter())
+                .map(|(a, b)| a - b)
+                .collect();
             lane.noise.add(clean, &noise);
             lane.distortion.add(clean, &distortion);
-            parts = vec![std::mem::take(full), std::mem::take(clean), noise, distortion];
+            parts = vec![
+                std::mem::take(full),
+                std::mem::take(clean),
+                noise,
+                distortion,
+            ];
         }
         for (track, part) in tracks.iter_mut().zip(parts) {
             track.push(part);
@@ -212,13 +257,30 @@ struct Run {
 }
 
 impl Lane {
-    fn new(link: &Link, job: &Job, rate: u32, factor: u32, channel: usize) -> Result<Self, RatioError> {
+    fn new(
+        link: &Link,
+        job: &Job,
+        rate: u32,
+        factor: u32,
+        channel: usize,
+    ) -> Result<Self, RatioError> {
         let rate_in_link = f64::from(rate) * f64::from(factor);
-        let full = Conditions { channel, cold: job.cold, ..link.conditions(rate_in_link, job.seed) };
+        let full = Conditions {
+            channel,
+            cold: job.cold,
+            ..link.conditions(rate_in_link, job.seed)
+        };
         let mut kinds = vec![full.clone()];
         if job.stems {
-            let noiseless = Conditions { noise: false, lamps: false, ..full };
-            let clean = Conditions { curves: Curves::Straight, ..noiseless.clone() };
+            let noiseless = Conditions {
+                noise: false,
+                lamps: false,
+                ..full
+            };
+            let clean = Conditions {
+                curves: Curves::Straight,
+                ..noiseless.clone()
+            };
             kinds.extend([noiseless, clean]);
         }
         let runs = kinds

@@ -65,13 +65,28 @@ const PATIENCE: f64 = 1.0;
 /// Four records of a second each, run side by side: the tone without noise (gain, THD), the tone with everything (THD+N), silence
 /// with everything (noise), silence with the lamps alone (hum). The band's edges come from the Model faces.
 pub fn measure(link: &Link, bench: &Bench, seed: u64) -> Measured {
-    let all = Conditions { interruptions: false, ..link.conditions(TEST_RATE, seed) };
-    let quiet = Conditions { noise: false, lamps: false, ..all.clone() };
-    let lamps = Conditions { noise: false, ..all.clone() };
+    let all = Conditions {
+        interruptions: false,
+        ..link.conditions(TEST_RATE, seed)
+    };
+    let quiet = Conditions {
+        noise: false,
+        lamps: false,
+        ..all.clone()
+    };
+    let lamps = Conditions {
+        noise: false,
+        ..all.clone()
+    };
     let flickers = link.lamps().iter().any(|l| l.lines().next().is_some());
 
     let ((pure, noisy), (idle, hum)) = rayon::join(
-        || rayon::join(|| record(link, bench, &quiet, true), || record(link, bench, &all, true)),
+        || {
+            rayon::join(
+                || record(link, bench, &quiet, true),
+                || record(link, bench, &all, true),
+            )
+        },
         || {
             rayon::join(
                 || record(link, bench, &all, false),
@@ -80,25 +95,52 @@ pub fn measure(link: &Link, bench: &Bench, seed: u64) -> Measured {
         },
     );
 
-    let conditions = figures::Conditions { rate: TEST_RATE, tone: bench.tone, band: bench.band };
+    let conditions = figures::Conditions {
+        rate: TEST_RATE,
+        tone: bench.tone,
+        band: bench.band,
+    };
     let mut figures = Figures::default();
     let mut noise_scatter_db = None;
     let mut fundamental = None;
-    if let Err(reason) = tone_figures(&mut figures, &mut fundamental, link, bench, &conditions, &pure, &noisy) {
-        for key in ["thd_percent", "thd_db", "thd_n_percent", "sinad_db", "gain_db", "signal_rms_v"] {
+    if let Err(reason) = tone_figures(
+        &mut figures,
+        &mut fundamental,
+        link,
+        bench,
+        &conditions,
+        &pure,
+        &noisy,
+    ) {
+        for key in [
+            "thd_percent",
+            "thd_db",
+            "thd_n_percent",
+            "sinad_db",
+            "gain_db",
+            "signal_rms_v",
+        ] {
             figures.explain(key, &reason);
         }
     }
-    match idle.as_ref().map_err(Clone::clone).and_then(|r| Ok(idle_noise(&r.samples, &conditions)?)) {
+    match idle
+        .as_ref()
+        .map_err(Clone::clone)
+        .and_then(|r| Ok(idle_noise(&r.samples, &conditions)?))
+    {
         Ok(noise) => {
             noise_scatter_db = Some(noise.scatter_db);
             figures.noise_rms_v = Some(noise.rms);
             match fundamental {
                 Some(signal) => figures.set_signal_and_noise(signal, &noise),
-                None => ["snr_db", "snr_a_db"].iter().for_each(|k| figures.explain(k, "no tone arrives")),
+                None => ["snr_db", "snr_a_db"]
+                    .iter()
+                    .for_each(|k| figures.explain(k, "no tone arrives")),
             }
         }
-        Err(reason) => ["noise_rms_v", "snr_db", "snr_a_db"].iter().for_each(|k| figures.explain(k, &reason)),
+        Err(reason) => ["noise_rms_v", "snr_db", "snr_a_db"]
+            .iter()
+            .for_each(|k| figures.explain(k, &reason)),
     }
     hum_figure(&mut figures, link, &conditions, fundamental, hum);
     let edges = band_edges(|f| link.transfer(f).norm(), bench.band);
@@ -114,11 +156,20 @@ pub fn measure(link: &Link, bench: &Bench, seed: u64) -> Measured {
         Ok(db) => figures.headroom_db = Some(db),
         Err(reason) => figures.explain("headroom_db", reason),
     }
-    for key in ["imd_smpte_percent", "imd_twin_tone_percent", "sti", "loudness_lufs"] {
+    for key in [
+        "imd_smpte_percent",
+        "imd_twin_tone_percent",
+        "sti",
+        "loudness_lufs",
+    ] {
         figures.explain(key, "not asked for");
     }
     let events = noisy.map(|r| r.events).unwrap_or_default();
-    Measured { figures, events, noise_scatter_db }
+    Measured {
+        figures,
+        events,
+        noise_scatter_db,
+    }
 }
 
 /// Why a figure could not be had, in words.
@@ -136,21 +187,34 @@ impl From<Unmeasurable> for Reason {
 }
 
 /// A settled record of the link's output in volts, under the tone or idle.
-fn record(link: &Link, bench: &Bench, conditions: &Conditions, tone: bool) -> Result<Record, Reason> {
+fn record(
+    link: &Link,
+    bench: &Bench,
+    conditions: &Conditions,
+    tone: bool,
+) -> Result<Record, Reason> {
     let period = 1.0 / bench.tone;
     let slow = (TIME_CONSTANTS * link.slowest_time()).min(PATIENCE);
     let settling = (SETTLING_PERIODS * period).max(SETTLING).max(slow);
     let length = (SETTLING_PERIODS * period).max(RECORD);
-    let (before, during) = ((settling * TEST_RATE) as usize, (length * TEST_RATE).round() as usize);
+    let (before, during) = (
+        (settling * TEST_RATE) as usize,
+        (length * TEST_RATE).round() as usize,
+    );
     let mut samples = vec![0.0; before + during];
     if tone {
         let onset = (settling / 2.0).min(SETTLING_PERIODS / 2.0 * period);
-        Tone::new(TEST_RATE, bench.tone, bench.peak(), onset).map_err(|e| e.to_string())?.fill(&mut samples);
+        Tone::new(TEST_RATE, bench.tone, bench.peak(), onset)
+            .map_err(|e| e.to_string())?
+            .fill(&mut samples);
     }
     let mut chain = link.chain(conditions);
     chain.run(&mut samples);
     samples.drain(..before);
-    Ok(Record { samples, events: chain.events() })
+    Ok(Record {
+        samples,
+        events: chain.events(),
+    })
 }
 
 fn tone_figures(
@@ -189,15 +253,25 @@ fn hum_figure(
     let Some(signal) = fundamental else {
         return figures.explain("hum_db", "no tone arrives");
     };
-    let mut mains: Vec<f64> = link.lamps().iter().filter(|l| l.lines().next().is_some()).map(|l| l.mains()).collect();
+    let mut mains: Vec<f64> = link
+        .lamps()
+        .iter()
+        .filter(|l| l.lines().next().is_some())
+        .map(|l| l.mains())
+        .collect();
     mains.sort_by(f64::total_cmp);
     mains.dedup();
     let power = record.and_then(|r| {
-        mains.iter().try_fold(0.0, |sum, &f| Ok(sum + hum_rms(&r.samples, conditions, f)?.powi(2)))
+        mains.iter().try_fold(0.0, |sum, &f| {
+            Ok(sum + hum_rms(&r.samples, conditions, f)?.powi(2))
+        })
     });
     match power {
         Ok(power) if power > 0.0 => figures.hum_db = Some(decibels(power.sqrt() / signal)),
-        Ok(_) => figures.explain("hum_db", "no mains multiple reaches the output inside the band"),
+        Ok(_) => figures.explain(
+            "hum_db",
+            "no mains multiple reaches the output inside the band",
+        ),
         Err(reason) => figures.explain("hum_db", reason),
     }
 }

@@ -10,7 +10,12 @@ use crate::station::{Limit, Reading};
 
 /// The document of `findings`.
 pub fn document(findings: &Findings) -> Value {
-    let Findings { design, link, measured, .. } = findings;
+    let Findings {
+        design,
+        link,
+        measured,
+        ..
+    } = findings;
     let figures = &measured.figures;
     let stations: Vec<Value> = link
         .stations()
@@ -34,7 +39,9 @@ pub fn document(findings: &Findings) -> Value {
         .collect();
     let mut operating_point = Map::new();
     for station in &stations {
-        let (Some(path), Some(Value::Object(values))) = (station["path"].as_str(), station.get("operating_point")) else {
+        let (Some(path), Some(Value::Object(values))) =
+            (station["path"].as_str(), station.get("operating_point"))
+        else {
             continue;
         };
         if !operating_point.contains_key(path) {
@@ -95,7 +102,9 @@ fn channel(c: &ChannelOutcome) -> Value {
 /// Where something happened, station by station, in samples of the link's rate.
 fn events(all: &[StationEvents]) -> Vec<Value> {
     all.iter()
-        .filter(|e| e.events.clipped + e.events.slewing + e.events.cut_off > 0 || e.events.peak.is_some())
+        .filter(|e| {
+            e.events.clipped + e.events.slewing + e.events.cut_off > 0 || e.events.peak.is_some()
+        })
         .map(|e| {
             json!({
                 "path": e.path,
@@ -112,9 +121,16 @@ fn events(all: &[StationEvents]) -> Vec<Value> {
 fn readings(all: &[Reading]) -> Map<String, Value> {
     all.iter()
         .map(|r| {
-            let name: String =
-                r.name.chars().filter(|c| *c != ',').map(|c| if c == ' ' { '_' } else { c }).collect();
-            (format!("{name}{}", unit_suffix(r.dimension)), json!(finite(r.value)))
+            let name: String = r
+                .name
+                .chars()
+                .filter(|c| *c != ',')
+                .map(|c| if c == ' ' { '_' } else { c })
+                .collect();
+            (
+                format!("{name}{}", unit_suffix(r.dimension)),
+                json!(finite(r.value)),
+            )
         })
         .collect()
 }
@@ -145,5 +161,6 @@ fn limit(limit: &Limit) -> Option<Value> {
         Limit::Level { cause, at } => ("level", cause, at),
         Limit::Slope { cause, at } => ("slope", cause, at),
     };
-    at.is_finite().then(|| json!({ "kind": kind, "cause": cause, "at": at }))
+    at.is_finite()
+        .then(|| json!({ "kind": kind, "cause": cause, "at": at }))
 }

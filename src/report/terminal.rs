@@ -52,7 +52,12 @@ fn quantity(value: Option<f64>, dimension: Dimension) -> String {
 fn programme_lines(out: &mut String, p: &Outcome) {
     heading(out, "Programme");
     let seconds = p.frames as f64 / f64::from(p.spec.rate);
-    line(out, "length", &format!("{seconds:.2} s"), &format!("{} frames at {} Hz", p.frames, p.spec.rate));
+    line(
+        out,
+        "length",
+        &format!("{seconds:.2} s"),
+        &format!("{} frames at {} Hz", p.frames, p.spec.rate),
+    );
     line(
         out,
         "link rate",
@@ -72,18 +77,41 @@ fn programme_lines(out: &mut String, p: &Outcome) {
 
 fn channel_lines(out: &mut String, c: &ChannelOutcome) {
     let level = |db: Option<f64>| db.map_or("silent".into(), |v| format!("{v:.1} dBFS"));
-    line(out, "sent", &level(c.sent.rms_dbfs()), &format!("peak {}", level(c.sent.peak_dbfs())));
-    line(out, "received", &level(c.received.rms_dbfs()), &format!("peak {}", level(c.received.peak_dbfs())));
-    line(out, "clipped samples", &c.received.clipped().to_string(), "at or beyond the file's full scale");
+    line(
+        out,
+        "sent",
+        &level(c.sent.rms_dbfs()),
+        &format!("peak {}", level(c.sent.peak_dbfs())),
+    );
+    line(
+        out,
+        "received",
+        &level(c.received.rms_dbfs()),
+        &format!("peak {}", level(c.received.peak_dbfs())),
+    );
+    line(
+        out,
+        "clipped samples",
+        &c.received.clipped().to_string(),
+        "at or beyond the file's full scale",
+    );
     if let Some(noise) = c.noise {
-        line(out, "programme SNR", &decibels(noise.ratio_db()), "clean programme over what the noise added");
+        line(
+            out,
+            "programme SNR",
+            &decibels(noise.ratio_db()),
+            "clean programme over what the noise added",
+        );
     }
     if let Some(distortion) = c.distortion {
         line(
             out,
             "programme distortion",
             &decibels(distortion.ratio_db().map(|db| -db)),
-            &format!("{} of the clean programme", percent(distortion.share().map(|s| 100.0 * s))),
+            &format!(
+                "{} of the clean programme",
+                percent(distortion.share().map(|s| 100.0 * s))
+            ),
         );
     }
     event_lines(out, &c.events);
@@ -118,29 +146,68 @@ fn figure_lines(out: &mut String, f: &Findings) {
     );
     let figures = &f.measured.figures;
     let remark = |key: &str, otherwise: &str| remark(figures, key, otherwise);
-    line(out, "gain", &decibels(figures.gain_db), &remark("gain_db", "output volts over source volts"));
-    line(out, "THD", &percent(figures.thd_percent), &remark("thd_db", &decibels(figures.thd_db)));
+    line(
+        out,
+        "gain",
+        &decibels(figures.gain_db),
+        &remark("gain_db", "output volts over source volts"),
+    );
+    line(
+        out,
+        "THD",
+        &percent(figures.thd_percent),
+        &remark("thd_db", &decibels(figures.thd_db)),
+    );
     line(
         out,
         "THD+N",
         &percent(figures.thd_n_percent),
-        &remark("thd_n_percent", &format!("SINAD {}", decibels(figures.sinad_db))),
+        &remark(
+            "thd_n_percent",
+            &format!("SINAD {}", decibels(figures.sinad_db)),
+        ),
     );
-    let scatter = f.measured.noise_scatter_db.map_or(String::new(), |s| format!(" ± {s:.2} dB"));
+    let scatter = f
+        .measured
+        .noise_scatter_db
+        .map_or(String::new(), |s| format!(" ± {s:.2} dB"));
     line(
         out,
         "SNR",
         &decibels(figures.snr_db),
-        &remark("snr_db", &format!("A-weighted {}{scatter}", decibels(figures.snr_a_db))),
+        &remark(
+            "snr_db",
+            &format!("A-weighted {}{scatter}", decibels(figures.snr_a_db)),
+        ),
     );
     let noise = quantity(figures.noise_rms_v, Dimension::Volt);
-    line(out, "signal", &quantity(figures.signal_rms_v, Dimension::Volt), &format!("rms; idle noise and hum {noise}"));
-    line(out, "hum", &decibels(figures.hum_db), &remark("hum_db", "mains multiples over the fundamental"));
+    line(
+        out,
+        "signal",
+        &quantity(figures.signal_rms_v, Dimension::Volt),
+        &format!("rms; idle noise and hum {noise}"),
+    );
+    line(
+        out,
+        "hum",
+        &decibels(figures.hum_db),
+        &remark("hum_db", "mains multiples over the fundamental"),
+    );
     let low = quantity(figures.band_low_hz, Dimension::Hertz);
     line(out, "band, low edge", &low, &remark("band_low_hz", "−3 dB"));
     let high = quantity(figures.band_high_hz, Dimension::Hertz);
-    line(out, "band, high edge", &high, &remark("band_high_hz", "−3 dB"));
-    line(out, "headroom", &decibels(figures.headroom_db), &remark("headroom_db", "until the first station limits"));
+    line(
+        out,
+        "band, high edge",
+        &high,
+        &remark("band_high_hz", "−3 dB"),
+    );
+    line(
+        out,
+        "headroom",
+        &decibels(figures.headroom_db),
+        &remark("headroom_db", "until the first station limits"),
+    );
 }
 
 /// What to say beside a figure: its floor, or why it is missing, or `otherwise`.
@@ -148,7 +215,11 @@ fn remark(figures: &Figures, key: &str, otherwise: &str) -> String {
     if figures.below_floor.iter().any(|k| k == key) {
         return format!("{otherwise}; below the method's floor, which is shown");
     }
-    figures.reasons.get(key).cloned().unwrap_or_else(|| otherwise.to_owned())
+    figures
+        .reasons
+        .get(key)
+        .cloned()
+        .unwrap_or_else(|| otherwise.to_owned())
 }
 
 fn operating_lines(out: &mut String, f: &Findings) {
@@ -165,7 +236,13 @@ fn operating_lines(out: &mut String, f: &Findings) {
         }
     }
     for lamp in f.link.lamps() {
-        let _ = writeln!(out, "  {} ({}): photocurrent {}", lamp.path(), lamp.kind(), Dimension::Ampere.show(lamp.mean()));
+        let _ = writeln!(
+            out,
+            "  {} ({}): photocurrent {}",
+            lamp.path(),
+            lamp.kind(),
+            Dimension::Ampere.show(lamp.mean())
+        );
     }
     let peak = f
         .programme
@@ -179,7 +256,10 @@ fn operating_lines(out: &mut String, f: &Findings) {
             out,
             "peak LED current",
             &Dimension::Ampere.show(peak),
-            &format!("of {} allowed", Dimension::Ampere.show(f.link.max_current())),
+            &format!(
+                "of {} allowed",
+                Dimension::Ampere.show(f.link.max_current())
+            ),
         );
     }
 }
@@ -193,11 +273,21 @@ fn budget_lines(out: &mut String, f: &Findings) {
     }
     heading(out, "What makes the noise");
     for part in f.budget.iter().take(SHOWN) {
-        line(out, &format!("{:.1} %", 100.0 * part.share), &Dimension::Volt.show(part.rms), &part.name);
+        line(
+            out,
+            &format!("{:.1} %", 100.0 * part.share),
+            &Dimension::Volt.show(part.rms),
+            &part.name,
+        );
     }
     let rest: f64 = f.budget.iter().skip(SHOWN).map(|p| p.share).sum();
     if f.budget.len() > SHOWN {
-        line(out, &format!("{:.1} %", 100.0 * rest), "", &format!("{} others", f.budget.len() - SHOWN));
+        line(
+            out,
+            &format!("{:.1} %", 100.0 * rest),
+            "",
+            &format!("{} others", f.budget.len() - SHOWN),
+        );
     }
 }
 
@@ -214,6 +304,11 @@ fn requirement_lines(out: &mut String, f: &Findings) {
                 unit => unit.show(x),
             },
         );
-        line(out, &format!("{} {}", v.key, v.limit), if v.met { "met" } else { "NOT MET" }, &value);
+        line(
+            out,
+            &format!("{} {}", v.key, v.limit),
+            if v.met { "met" } else { "NOT MET" },
+            &value,
+        );
     }
 }

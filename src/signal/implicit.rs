@@ -16,7 +16,8 @@ pub mod tr_bdf2 {
     #[inline]
     pub fn midway(now: f64, last: f64, before: f64) -> f64 {
         const S: f64 = GAMMA - 1.0;
-        now * ((S + 1.0) * (S + 2.0) / 2.0) - last * (S * (S + 2.0)) + before * (S * (S + 1.0) / 2.0)
+        now * ((S + 1.0) * (S + 2.0) / 2.0) - last * (S * (S + 2.0))
+            + before * (S * (S + 1.0) / 2.0)
     }
 }
 
@@ -45,10 +46,16 @@ pub fn rising_root(start: f64, scale: f64, mut f: impl FnMut(f64) -> (f64, f64))
             newton = x - reach.copysign(value);
             reach *= 8.0;
         }
-        let next = if newton > low && newton < high { newton } else { low + (high - low) / 2.0 };
-        let step = (next - x).abs();
+        if (newton - x).abs() <= scale {
+            return newton;
+        }
+        let next = if newton > low && newton < high {
+            newton
+        } else {
+            low + (high - low) / 2.0
+        };
         x = next;
-        if step <= scale || high - low <= scale {
+        if high - low <= scale {
             return x;
         }
     }
@@ -62,11 +69,24 @@ mod tests {
     #[test]
     fn finds_roots_that_plain_newton_misses() {
         // A steep exponential far from its root, a flat-shouldered tanh, a kink.
-        let a = rising_root(-5.0, 1e-14, |x| ((40.0 * x).min(600.0).exp() - 7.0, 40.0 * (40.0 * x).min(600.0).exp()));
+        let a = rising_root(-5.0, 1e-14, |x| {
+            (
+                (40.0 * x).min(600.0).exp() - 7.0,
+                40.0 * (40.0 * x).min(600.0).exp(),
+            )
+        });
         assert!((a - 7f64.ln() / 40.0).abs() < 1e-13);
-        let b = rising_root(30.0, 1e-14, |x: f64| (x.tanh() - 0.5, 1.0 - x.tanh().powi(2)));
+        let b = rising_root(30.0, 1e-14, |x: f64| {
+            (x.tanh() - 0.5, 1.0 - x.tanh().powi(2))
+        });
         assert!((b - 0.5f64.atanh()).abs() < 1e-13);
-        let c = rising_root(0.0, 1e-14, |x: f64| if x < 2.0 { (x * 1e-6 - 1.0, 1e-6) } else { (x - 3.0, 1.0) });
+        let c = rising_root(0.0, 1e-14, |x: f64| {
+            if x < 2.0 {
+                (x * 1e-6 - 1.0, 1e-6)
+            } else {
+                (x - 3.0, 1.0)
+            }
+        });
         assert!((c - 3.0).abs() < 1e-12);
     }
 

@@ -69,21 +69,37 @@ impl FirstOrderLaw {
     /// The unity-gain low-pass of `rate` (rad/s, > 0); an infinite rate passes everything.
     pub fn low_pass(rate: f64) -> Self {
         if rate.is_finite() {
-            Self { direct: 0.0, residue: rate, rate }
+            Self {
+                direct: 0.0,
+                residue: rate,
+                rate,
+            }
         } else {
-            Self { direct: 1.0, residue: 0.0, rate: 1.0 }
+            Self {
+                direct: 1.0,
+                residue: 0.0,
+                rate: 1.0,
+            }
         }
     }
 
     /// The unity-gain high-pass of `rate` (rad/s, ≥ 0); a rate of 0 passes everything.
     pub fn high_pass(rate: f64) -> Self {
-        Self { direct: 1.0, residue: -rate, rate }
+        Self {
+            direct: 1.0,
+            residue: -rate,
+            rate,
+        }
     }
 
     /// (1 + s/zero)/(1 + s/pole)·gain: a shelf. Rates in rad/s, > 0; both finite.
     pub fn shelf(gain: f64, zero: f64, pole: f64) -> Self {
         let high = gain * pole / zero;
-        Self { direct: high, residue: (gain - high) * pole, rate: pole }
+        Self {
+            direct: high,
+            residue: (gain - high) * pole,
+            rate: pole,
+        }
     }
 
     /// Value at `frequency` (Hz).
@@ -161,13 +177,26 @@ mod tests {
     fn follows_the_continuous_law_to_20_khz() {
         let rate = 384_000.0;
         for corner in [0.001, 1.0, 30.0, 1e3, 19e3, 150e3, 3e6, 1e9] {
-            for (law, decibels) in [(FirstOrderLaw::low_pass(TAU * corner), 0.003), (FirstOrderLaw::high_pass(TAU * corner), 0.02)] {
+            for (law, decibels) in [
+                (FirstOrderLaw::low_pass(TAU * corner), 0.003),
+                (FirstOrderLaw::high_pass(TAU * corner), 0.02),
+            ] {
                 for f in [20.0, 1e3, 8e3, 20e3] {
                     let ratio = discrete(&law, rate, f) / law.at(f);
                     let (db, degrees) = (20.0 * ratio.norm().log10(), ratio.arg().to_degrees());
-                    let below = if law.direct == 1.0 { (corner / f).max(1.0) } else { 1.0 };
-                    assert!(db.abs() < decibels * below, "corner {corner} f {f}: {db} dB");
-                    assert!(degrees.abs() < 0.1 * below, "corner {corner} f {f}: {degrees}°");
+                    let below = if law.direct == 1.0 {
+                        (corner / f).max(1.0)
+                    } else {
+                        1.0
+                    };
+                    assert!(
+                        db.abs() < decibels * below,
+                        "corner {corner} f {f}: {db} dB"
+                    );
+                    assert!(
+                        degrees.abs() < 0.1 * below,
+                        "corner {corner} f {f}: {degrees}°"
+                    );
                 }
             }
         }
@@ -175,10 +204,21 @@ mod tests {
 
     #[test]
     fn weights_are_continuous_where_the_series_ends() {
-        let (a, b) = (StepWeights::new(0.4999999, 1.0), StepWeights::new(0.5000001, 1.0));
-        assert!((a.now - b.now).abs() < 1e-6 && (a.last - b.last).abs() < 1e-6 && (a.before - b.before).abs() < 1e-6);
+        let (a, b) = (
+            StepWeights::new(0.4999999, 1.0),
+            StepWeights::new(0.5000001, 1.0),
+        );
+        assert!(
+            (a.now - b.now).abs() < 1e-6
+                && (a.last - b.last).abs() < 1e-6
+                && (a.before - b.before).abs() < 1e-6
+        );
         // Adams–Moulton for a rate of nought.
         let am = StepWeights::new(0.0, 12.0);
-        assert!((am.now - 5.0).abs() < 1e-12 && (am.last - 8.0).abs() < 1e-12 && (am.before + 1.0).abs() < 1e-12);
+        assert!(
+            (am.now - 5.0).abs() < 1e-12
+                && (am.last - 8.0).abs() < 1e-12
+                && (am.before + 1.0).abs() < 1e-12
+        );
     }
 }

@@ -53,18 +53,25 @@ impl Filter {
 
 /// Share of a unit Gaussian of deviation `sigma` between two points, by Simpson's rule.
 fn gaussian_share(from: f64, to: f64, sigma: f64) -> f64 {
-    let (a, b) = ((from / sigma).clamp(-9.0, 9.0), (to / sigma).clamp(-9.0, 9.0));
+    let (a, b) = (
+        (from / sigma).clamp(-9.0, 9.0),
+        (to / sigma).clamp(-9.0, 9.0),
+    );
     let n = 200;
     let h = (b - a) / n as f64;
     let density = |x: f64| (-x * x / 2.0).exp();
-    let inner: f64 = (1..n).map(|k| density(a + h * k as f64) * if k % 2 == 1 { 4.0 } else { 2.0 }).sum();
+    let inner: f64 = (1..n)
+        .map(|k| density(a + h * k as f64) * if k % 2 == 1 { 4.0 } else { 2.0 })
+        .sum();
     h / 3.0 * (density(a) + inner + density(b)) / std::f64::consts::TAU.sqrt()
 }
 
 impl Optics {
     /// From `[receiver.optics]`; `detector_area` in m².
     pub fn new(section: &Section, detector_area: f64) -> Self {
-        let field_of_view = section.optional("field_of_view").unwrap_or(std::f64::consts::FRAC_PI_2);
+        let field_of_view = section
+            .optional("field_of_view")
+            .unwrap_or(std::f64::consts::FRAC_PI_2);
         let area = match (section.optional("aperture"), section.optional("area")) {
             (Some(diameter), _) => std::f64::consts::PI / 4.0 * diameter * diameter,
             (None, Some(area)) => area,
@@ -74,7 +81,8 @@ impl Optics {
             area,
             field_of_view,
             concentrator: section
-                .optional("concentrator_index")
+                .given("concentrator_index")
+                .then(|| section.number("concentrator_index"))
                 .map_or(1.0, |index| law::concentrator_gain(index, field_of_view)),
             filter: section.table("filter").map(|f| Filter {
                 centre: f.number("centre"),
@@ -128,7 +136,13 @@ impl AirPath {
         let wavelength = emitter.number("wavelength");
         let mut warnings = Vec::new();
         let capture = if let Some(half_angle) = emitter.optional("half_angle") {
-            law::lambertian_capture(lambertian_order(half_angle), optics.area * optics.concentrator, distance, off_axis, tilt)
+            law::lambertian_capture(
+                lambertian_order(half_angle),
+                optics.area * optics.concentrator,
+                distance,
+                off_axis,
+                tilt,
+            )
         } else {
             let divergence = emitter.number("divergence");
             let radius = law::beam_radius(emitter.number("source_diameter"), divergence, distance);
@@ -167,19 +181,36 @@ impl AirPath {
         }
         gain *= (-extinction * distance).exp();
         let readings = vec![
-            Reading { name: "share of the flux", value: gain, dimension: Dimension::Share },
-            Reading { name: "on the detector", value: gain * flux, dimension: Dimension::Watt },
+            Reading {
+                name: "share of the flux",
+                value: gain,
+                dimension: Dimension::Share,
+            },
+            Reading {
+                name: "on the detector",
+                value: gain * flux,
+                dimension: Dimension::Watt,
+            },
         ];
         let interruptions = interruptions
             .iter()
             .map(|s| Interruption {
                 name: s.path.clone(),
-                when: s.optional("at").map_or_else(|| When::Rate(s.number("rate")), When::At),
+                when: s
+                    .optional("at")
+                    .map_or_else(|| When::Rate(s.number("rate")), When::At),
                 lasts: s.number("lasts"),
                 edge: s.number("edge"),
             })
             .collect();
-        Ok(Self { path: section.path.clone(), gain, flux, interruptions, readings, warnings })
+        Ok(Self {
+            path: section.path.clone(),
+            gain,
+            flux,
+            interruptions,
+            readings,
+            warnings,
+        })
     }
 
     /// Light on the detector at rest, W.
@@ -214,7 +245,10 @@ impl Model for AirPath {
     }
 
     fn limits(&self) -> Vec<Limit> {
-        vec![Limit::Level { cause: "darkness", at: -self.received() }]
+        vec![Limit::Level {
+            cause: "darkness",
+            at: -self.received(),
+        }]
     }
 
     fn warnings(&self) -> Vec<String> {
@@ -222,9 +256,23 @@ impl Model for AirPath {
     }
 
     fn runner(&self, conditions: &Conditions) -> Box<dyn Runner> {
-        let kept = if conditions.interruptions { self.interruptions.as_slice() } else { &[] };
-        let cuts = kept.iter().map(|i| Cut::new(i.clone(), conditions.seed)).collect();
-        Box::new(AirRunner { gain: self.gain, flux: self.flux, rate: conditions.rate, sample: 0, cuts, count: 0 })
+        let kept = if conditions.interruptions {
+            self.interruptions.as_slice()
+        } else {
+            &[]
+        };
+        let cuts = kept
+            .iter()
+            .map(|i| Cut::new(i.clone(), conditions.seed))
+            .collect();
+        Box::new(AirRunner {
+            gain: self.gain,
+            flux: self.flux,
+            rate: conditions.rate,
+            sample: 0,
+            cuts,
+            count: 0,
+        })
     }
 }
 
@@ -249,7 +297,12 @@ struct Cut {
 impl Cut {
     fn new(cause: Interruption, seed: u64) -> Self {
         let draws = Gaussian::new(seed, 0, &cause.name, "times");
-        let mut cut = Self { cause, draws, begins: 0.0, begun: false };
+        let mut cut = Self {
+            cause,
+            draws,
+            begins: 0.0,
+            begun: false,
+        };
         cut.begins = match cut.cause.when {
             When::At(at) => at,
             When::Rate(rate) => cut.wait(rate),
@@ -265,7 +318,9 @@ impl Cut {
 
     /// Share of the beam that passes at `time` (s), and whether a cut begins with this call.
     fn passes(&mut self, time: f64) -> (f64, bool) {
-        let Interruption { when, lasts, edge, .. } = self.cause;
+        let Interruption {
+            when, lasts, edge, ..
+        } = self.cause;
         if let When::Rate(rate) = when {
             // The next one is awaited from the end of this one.
             while time >= self.begins + lasts + edge {
@@ -276,7 +331,10 @@ impl Cut {
         let since = time - self.begins;
         let begins = since >= 0.0 && !self.begun;
         self.begun |= begins;
-        (1.0 - shade(since, edge) + shade(since - lasts, edge), begins)
+        (
+            1.0 - shade(since, edge) + shade(since - lasts, edge),
+            begins,
+        )
     }
 }
 
@@ -313,6 +371,9 @@ impl Runner for AirRunner {
     }
 
     fn events(&self) -> Events {
-        Events { interruptions: self.count, ..Events::default() }
+        Events {
+            interruptions: self.count,
+            ..Events::default()
+        }
     }
 }

@@ -39,7 +39,9 @@ impl Lamp {
         } else {
             let Some(filter) = optics.filter else {
                 return Err(section.fault(
-                    section.given("spectral_irradiance").then_some("spectral_irradiance"),
+                    section
+                        .given("spectral_irradiance")
+                        .then_some("spectral_irradiance"),
                     "a light known by its spectrum needs the width of an optical filter",
                     "give `irradiance` or `photocurrent` here, or `filter` under [receiver.optics]",
                 ));
@@ -61,9 +63,19 @@ impl Lamp {
         if kind == "incandescent" {
             // The filament follows the power, which beats at twice the mains.
             let phase = section.number("phase");
-            lines.push((2.0 * section.number("mains"), section.number("ripple"), 2.0 * phase));
+            lines.push((
+                2.0 * section.number("mains"),
+                section.number("ripple"),
+                2.0 * phase,
+            ));
         }
-        Ok(Self { path: section.path.clone(), kind, mean, mains: section.number("mains"), lines })
+        Ok(Self {
+            path: section.path.clone(),
+            kind,
+            mean,
+            mains: section.number("mains"),
+            lines,
+        })
     }
 
     /// Mean photocurrent, A.
@@ -93,12 +105,18 @@ impl Lamp {
 
     /// What it lays on the detector.
     pub fn operating_point(&self) -> Vec<Reading> {
-        vec![Reading { name: "photocurrent", value: self.mean, dimension: Dimension::Ampere }]
+        vec![Reading {
+            name: "photocurrent",
+            value: self.mean,
+            dimension: Dimension::Ampere,
+        }]
     }
 
     /// The lines of its flicker: frequency, Hz, and amplitude, A peak.
     pub fn lines(&self) -> impl Iterator<Item = (f64, f64)> + '_ {
-        self.lines.iter().map(|&(f, depth, _)| (f, self.mean * depth))
+        self.lines
+            .iter()
+            .map(|&(f, depth, _)| (f, self.mean * depth))
     }
 
     /// The lamp in time: photocurrent away from its mean; none where it stands still or is silent.
@@ -108,7 +126,9 @@ impl Lamp {
             .lines
             .iter()
             .filter(|l| l.1 * self.mean != 0.0)
-            .map(|&(frequency, depth, phase)| Line::new(frequency / conditions.rate, self.mean * depth, phase))
+            .map(|&(frequency, depth, phase)| {
+                Line::new(frequency / conditions.rate, self.mean * depth, phase)
+            })
             .collect();
         (sounds && !lines.is_empty()).then_some(Flicker { lines })
     }
@@ -144,18 +164,28 @@ impl Line {
 
     fn new(turns_a_sample: f64, amplitude: f64, phase: f64) -> Self {
         let step = (TAU * turns_a_sample).sin_cos();
-        Self { turns_a_sample, amplitude, phase, sample: 0, step: (step.1, step.0), now: (0.0, 0.0) }
+        Self {
+            turns_a_sample,
+            amplitude,
+            phase,
+            sample: 0,
+            step: (step.1, step.0),
+            now: (0.0, 0.0),
+        }
     }
 
     fn next(&mut self) -> f64 {
-        if self.sample % Self::RENEW == 0 {
+        if self.sample.is_multiple_of(Self::RENEW) {
             let turns = (self.turns_a_sample * self.sample as f64).fract();
             let (s, c) = (TAU * turns + self.phase).sin_cos();
             self.now = (c, s);
         }
         self.sample += 1;
         let (c, s) = self.now;
-        self.now = (c * self.step.0 - s * self.step.1, c * self.step.1 + s * self.step.0);
+        self.now = (
+            c * self.step.0 - s * self.step.1,
+            c * self.step.1 + s * self.step.0,
+        );
         self.amplitude * c
     }
 }

@@ -30,7 +30,11 @@ impl Coupling {
     pub fn new(section: &Section, before: &Drive, next: &Load) -> Self {
         let capacitance = section.number("capacitor");
         let conductance = next.signal_conductance();
-        let rate = if conductance > 0.0 { 1.0 / (capacitance * (before.series + 1.0 / conductance)) } else { 0.0 };
+        let rate = if conductance > 0.0 {
+            1.0 / (capacitance * (before.series + 1.0 / conductance))
+        } else {
+            0.0
+        };
         // The next input's own capacitance stands across what remains of the resistances.
         let across = before.seen / (1.0 + before.seen * conductance);
         Self {
@@ -43,7 +47,11 @@ impl Coupling {
                 rest: next.return_voltage,
                 series: 0.0,
                 seen: before.seen,
-                blocked: Some(before.blocked.map_or(capacitance, |c| c * capacitance / (c + capacitance))),
+                blocked: Some(
+                    before
+                        .blocked
+                        .map_or(capacitance, |c| c * capacitance / (c + capacitance)),
+                ),
             },
         }
     }
@@ -65,7 +73,11 @@ impl Model for Coupling {
 
     fn operating_point(&self) -> Vec<Reading> {
         vec![
-            Reading { name: "voltage across", value: self.capacitor_rest, dimension: Dimension::Volt },
+            Reading {
+                name: "voltage across",
+                value: self.capacitor_rest,
+                dimension: Dimension::Volt,
+            },
             Reading {
                 name: "corner",
                 value: self.high_pass.rate / std::f64::consts::TAU,
@@ -91,7 +103,11 @@ impl Model for Coupling {
     }
 
     fn slowest_time(&self) -> f64 {
-        if self.high_pass.rate > 0.0 { 1.0 / self.high_pass.rate } else { 0.0 }
+        if self.high_pass.rate > 0.0 {
+            1.0 / self.high_pass.rate
+        } else {
+            0.0
+        }
     }
 
     fn runner(&self, conditions: &Conditions) -> Box<dyn Runner> {
@@ -100,7 +116,11 @@ impl Model for Coupling {
             // Discharged: the whole quiescent voltage stands at the output and dies away.
             high_pass.start_output(self.capacitor_rest);
         }
-        Box::new(CouplingRunner { gain: self.gain, high_pass, low_pass: self.low_pass.section(conditions.rate) })
+        Box::new(CouplingRunner {
+            gain: self.gain,
+            high_pass,
+            low_pass: self.low_pass.section(conditions.rate),
+        })
     }
 }
 

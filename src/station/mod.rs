@@ -52,7 +52,8 @@ impl Conditions {
     ///
     /// `unit` tells apart the equal parts of one station; each has a stream of its own.
     pub fn stream(&self, name: &str, unit: usize) -> Option<Gaussian> {
-        (self.noise && self.sounds(name)).then(|| Gaussian::new(self.seed, self.channel, name, &unit.to_string()))
+        (self.noise && self.sounds(name))
+            .then(|| Gaussian::new(self.seed, self.channel, name, &unit.to_string()))
     }
 
     /// Whether the design lets the contributor `name` sound.

@@ -24,7 +24,13 @@ pub struct Contributor {
 impl Contributor {
     /// A white source.
     pub fn white(name: String, density: f64) -> Self {
-        Self { name, density, corner: 0.0, shape: None, unit: 0 }
+        Self {
+            name,
+            density,
+            corner: 0.0,
+            shape: None,
+            unit: 0,
+        }
     }
 
     /// Gives it a 1/f corner, Hz.
@@ -47,7 +53,10 @@ impl Contributor {
 
     /// Its share at a station's output, `gain_squared` times the node.
     pub fn share(&self, frequency: f64, gain_squared: f64) -> Share {
-        Share { name: self.name.clone(), density: self.at(frequency) * gain_squared }
+        Share {
+            name: self.name.clone(),
+            density: self.at(frequency) * gain_squared,
+        }
     }
 
     /// The source in time; none where it is silent.
@@ -69,7 +78,13 @@ impl Contributor {
             scale: scale * self.corner.sqrt(),
         });
         let shape = self.shape.map(|law| law.section(conditions.rate));
-        Some(NoiseSource { white, scale, flicker, shape, buffer: Vec::new() })
+        Some(NoiseSource {
+            white,
+            scale,
+            flicker,
+            shape,
+            buffer: Vec::new(),
+        })
     }
 }
 
@@ -110,7 +125,10 @@ impl NoiseSource {
 
 /// The sources of those `contributors` that sound.
 pub fn sources(contributors: &[Contributor], conditions: &Conditions) -> Vec<NoiseSource> {
-    contributors.iter().filter_map(|c| c.source(conditions)).collect()
+    contributors
+        .iter()
+        .filter_map(|c| c.source(conditions))
+        .collect()
 }
 
 /// Adds every source to `block`.

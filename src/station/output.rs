@@ -48,7 +48,11 @@ impl Model for Output {
     }
 
     fn operating_point(&self) -> Vec<Reading> {
-        vec![Reading { name: "rest", value: self.rest, dimension: Dimension::Volt }]
+        vec![Reading {
+            name: "rest",
+            value: self.rest,
+            dimension: Dimension::Volt,
+        }]
     }
 
     fn curve(&self, x: f64) -> f64 {

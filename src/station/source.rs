@@ -26,12 +26,22 @@ impl Source {
             Contributor::white(name("noise"), section.number("noise").powi(2)),
             Contributor::white(name("resistance"), johnson(resistance, temperature)),
         ];
-        Self { path: section.path.clone(), full_scale: section.number("full_scale"), resistance, contributors }
+        Self {
+            path: section.path.clone(),
+            full_scale: section.number("full_scale"),
+            resistance,
+            contributors,
+        }
     }
 
     /// What it offers.
     pub fn drive(&self) -> Drive {
-        Drive { rest: 0.0, series: self.resistance, seen: self.resistance, blocked: None }
+        Drive {
+            rest: 0.0,
+            series: self.resistance,
+            seen: self.resistance,
+            blocked: None,
+        }
     }
 
     /// Peak volts of a sample of 1.
@@ -50,7 +60,11 @@ impl Model for Source {
     }
 
     fn operating_point(&self) -> Vec<Reading> {
-        vec![Reading { name: "full scale", value: self.full_scale, dimension: Dimension::Volt }]
+        vec![Reading {
+            name: "full scale",
+            value: self.full_scale,
+            dimension: Dimension::Volt,
+        }]
     }
 
     fn curve(&self, x: f64) -> f64 {
@@ -62,7 +76,10 @@ impl Model for Source {
     }
 
     fn noise(&self, frequency: f64) -> Vec<Share> {
-        self.contributors.iter().map(|c| c.share(frequency, 1.0)).collect()
+        self.contributors
+            .iter()
+            .map(|c| c.share(frequency, 1.0))
+            .collect()
     }
 
     fn limits(&self) -> Vec<Limit> {

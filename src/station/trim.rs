@@ -38,17 +38,32 @@ impl Trim {
     pub fn input_load(section: &Section, next: &Load) -> Load {
         let (upper, lower) = Self::parts(section);
         let through = |below: f64| 1.0 / (upper + below);
-        let parallel = |g: f64| if lower > 0.0 { 1.0 / (1.0 / lower + g) } else { 0.0 };
+        let parallel = |g: f64| {
+            if lower > 0.0 {
+                1.0 / (1.0 / lower + g)
+            } else {
+                0.0
+            }
+        };
         let direct = through(parallel(next.conductance));
         let branch = next.branch.and_then(|b| {
             let extra = through(parallel(next.signal_conductance())) - direct;
-            let around = if upper > 0.0 { parallel(next.conductance + 1.0 / upper) } else { 0.0 };
+            let around = if upper > 0.0 {
+                parallel(next.conductance + 1.0 / upper)
+            } else {
+                0.0
+            };
             (extra > 0.0).then(|| Branch {
                 resistance: 1.0 / extra,
                 capacitance: extra * b.capacitance * (b.resistance + around),
             })
         });
-        Load { conductance: direct, return_voltage: next.return_voltage, branch, capacitance: 0.0 }
+        Load {
+            conductance: direct,
+            return_voltage: next.return_voltage,
+            branch,
+            capacitance: 0.0,
+        }
     }
 
     /// From its section, between `before` and `next`; `temperature` in K.
@@ -61,8 +76,8 @@ impl Trim {
         // The pot's own noise, with whatever feeds it standing in series with the upper part.
         let behind = upper + before.seen;
         let whole = behind + lower;
-        let density =
-            johnson(upper, temperature) * (lower / whole).powi(2) + johnson(lower, temperature) * (behind / whole).powi(2);
+        let density = johnson(upper, temperature) * (lower / whole).powi(2)
+            + johnson(lower, temperature) * (behind / whole).powi(2);
         Self {
             path: section.path.clone(),
             gain,
@@ -93,8 +108,16 @@ impl Model for Trim {
 
     fn operating_point(&self) -> Vec<Reading> {
         vec![
-            Reading { name: "wiper, open", value: self.drive.rest, dimension: Dimension::Volt },
-            Reading { name: "output resistance", value: self.drive.series, dimension: Dimension::Ohm },
+            Reading {
+                name: "wiper, open",
+                value: self.drive.rest,
+                dimension: Dimension::Volt,
+            },
+            Reading {
+                name: "output resistance",
+                value: self.drive.series,
+                dimension: Dimension::Ohm,
+            },
         ]
     }
 
@@ -115,7 +138,10 @@ impl Model for Trim {
     }
 
     fn runner(&self, conditions: &Conditions) -> Box<dyn Runner> {
-        Box::new(TrimRunner { gain: self.gain, noise: self.contributor.source(conditions) })
+        Box::new(TrimRunner {
+            gain: self.gain,
+            noise: self.contributor.source(conditions),
+        })
     }
 }
 

@@ -25,11 +25,20 @@ pub struct Branch {
 
 impl Load {
     /// Nothing at all.
-    pub const OPEN: Self = Self { conductance: 0.0, return_voltage: 0.0, branch: None, capacitance: 0.0 };
+    pub const OPEN: Self = Self {
+        conductance: 0.0,
+        return_voltage: 0.0,
+        branch: None,
+        capacitance: 0.0,
+    };
 
     /// A resistance (Ω, may be infinite) to `return_voltage` (V).
     pub fn resistor(resistance: f64, return_voltage: f64) -> Self {
-        Self { conductance: 1.0 / resistance, return_voltage, ..Self::OPEN }
+        Self {
+            conductance: 1.0 / resistance,
+            return_voltage,
+            ..Self::OPEN
+        }
     }
 
     /// Conductance in mid-band, where the coupling capacitors are short, S.
@@ -40,15 +49,25 @@ impl Load {
     /// Admittance at `frequency` (Hz), S.
     pub fn admittance(&self, frequency: f64) -> Complex64 {
         let s = Complex64::new(0.0, TAU * frequency);
-        let branch = self.branch.map_or(0.0.into(), |b| s * b.capacitance / (1.0 + s * b.capacitance * b.resistance));
+        let branch = self.branch.map_or(0.0.into(), |b| {
+            s * b.capacitance / (1.0 + s * b.capacitance * b.resistance)
+        });
         self.conductance + s * self.capacitance + branch
     }
 
     /// This load behind a series capacitor (F). A capacitor further on is taken in mid-band.
     pub fn behind_capacitor(&self, capacitance: f64) -> Self {
         let conductance = self.signal_conductance();
-        let branch = (conductance > 0.0).then(|| Branch { resistance: 1.0 / conductance, capacitance });
-        Self { conductance: 0.0, return_voltage: self.return_voltage, branch, capacitance: 0.0 }
+        let branch = (conductance > 0.0).then(|| Branch {
+            resistance: 1.0 / conductance,
+            capacitance,
+        });
+        Self {
+            conductance: 0.0,
+            return_voltage: self.return_voltage,
+            branch,
+            capacitance: 0.0,
+        }
     }
 }
 
@@ -68,7 +87,12 @@ pub struct Drive {
 impl Drive {
     /// A stiff node at `rest` volts.
     pub fn stiff(rest: f64) -> Self {
-        Self { rest, series: 0.0, seen: 0.0, blocked: None }
+        Self {
+            rest,
+            series: 0.0,
+            seen: 0.0,
+            blocked: None,
+        }
     }
 
     /// Quiescent voltage at the node once `load` hangs on it, V.
@@ -99,7 +123,12 @@ mod tests {
 
     #[test]
     fn rest_divides_with_its_return() {
-        let drive = Drive { rest: 0.0, series: 10e3, seen: 10e3, blocked: None };
+        let drive = Drive {
+            rest: 0.0,
+            series: 10e3,
+            seen: 10e3,
+            blocked: None,
+        };
         assert!((drive.loaded_rest(&Load::resistor(30e3, 4.0)) - 1.0).abs() < 1e-12);
         assert!((drive.division(1.0 / 30e3) - 0.75).abs() < 1e-12);
     }

@@ -22,7 +22,11 @@ pub struct Verdict {
 /// Judges every limit of `design`. A figure that could not be had meets no limit, except that an upper limit on hum is met
 /// where no lamp flickers (`lamps`).
 pub fn judge(design: &Design, figures: &Figures, lamps: bool) -> Vec<Verdict> {
-    design.require.iter().map(|limit| verdict(limit, figures, lamps)).collect()
+    design
+        .require
+        .iter()
+        .map(|limit| verdict(limit, figures, lamps))
+        .collect()
 }
 
 fn verdict(limit: &Requirement, figures: &Figures, lamps: bool) -> Verdict {
@@ -34,7 +38,10 @@ fn verdict(limit: &Requirement, figures: &Figures, lamps: bool) -> Verdict {
         "snr" => (figures.snr_db, "snr_db"),
         "snr_a" => (figures.snr_a_db, "snr_a_db"),
         "thd" => (percent(figures.thd_percent, figures.thd_db).0, "thd_db"),
-        "thd_n" => (percent(figures.thd_n_percent, figures.sinad_db.map(|db| -db)).0, "thd_n_percent"),
+        "thd_n" => (
+            percent(figures.thd_n_percent, figures.sinad_db.map(|db| -db)).0,
+            "thd_n_percent",
+        ),
         "sinad" => (figures.sinad_db, "sinad_db"),
         "gain" => (figures.gain_db, "gain_db"),
         "hum" => (figures.hum_db, "hum_db"),
@@ -42,8 +49,14 @@ fn verdict(limit: &Requirement, figures: &Figures, lamps: bool) -> Verdict {
         "band_low" => (figures.band_low_hz, "band_low_hz"),
         "band_high" => (figures.band_high_hz, "band_high_hz"),
         "sti" => (figures.sti, "sti"),
-        "imd_smpte" => (figures.imd_smpte_percent.map(|p| p / 100.0), "imd_smpte_percent"),
-        "imd_twin_tone" => (figures.imd_twin_tone_percent.map(|p| p / 100.0), "imd_twin_tone_percent"),
+        "imd_smpte" => (
+            figures.imd_smpte_percent.map(|p| p / 100.0),
+            "imd_smpte_percent",
+        ),
+        "imd_twin_tone" => (
+            figures.imd_twin_tone_percent.map(|p| p / 100.0),
+            "imd_twin_tone_percent",
+        ),
         "loudness" => (figures.loudness_lufs, "loudness_lufs"),
         "signal" => (figures.signal_rms_v, "signal_rms_v"),
         "noise" => (figures.noise_rms_v, "noise_rms_v"),
@@ -56,6 +69,12 @@ fn verdict(limit: &Requirement, figures: &Figures, lamps: bool) -> Verdict {
         value,
         unit: limit.unit,
         met: value.map_or(no_hum, |v| limit.met_by(v)),
-        reason: value.is_none().then(|| figures.reasons.get(key).cloned().unwrap_or_else(|| "not asked for".into())),
+        reason: value.is_none().then(|| {
+            figures
+                .reasons
+                .get(key)
+                .cloned()
+                .unwrap_or_else(|| "not asked for".into())
+        }),
     }
 }

@@ -1,8 +1,8 @@
 //! The outside checks, one binary: a module a topic.
 
+mod design;
 mod figure_methods;
 mod intermodulation;
 mod noise_streams;
 mod resampling;
 mod wav;
-mod design;

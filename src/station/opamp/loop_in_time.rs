@@ -30,7 +30,10 @@ pub(super) struct AmplifierRunner {
 
 enum Core {
     /// The loop settles within a sample: the output follows, at most `step` volts a sample.
-    AtOnce { step: f64, output: f64 },
+    AtOnce {
+        step: f64,
+        output: f64,
+    },
     Straight(FirstOrder),
     Bent(Bent),
 }
@@ -53,9 +56,17 @@ impl AmplifierRunner {
         let lambda = law.unity * beta;
         let core = match curves {
             Curves::Straight => Core::Straight(
-                FirstOrderLaw::low_pass(if lambda / rate > AT_ONCE { f64::INFINITY } else { lambda }).section(rate),
+                FirstOrderLaw::low_pass(if lambda / rate > AT_ONCE {
+                    f64::INFINITY
+                } else {
+                    lambda
+                })
+                .section(rate),
             ),
-            Curves::Bent if lambda / rate > AT_ONCE => Core::AtOnce { step: law.slew / rate, output: 0.0 },
+            Curves::Bent if lambda / rate > AT_ONCE => Core::AtOnce {
+                step: law.slew / rate,
+                output: 0.0,
+            },
             Curves::Bent => Core::Bent(Bent {
                 law,
                 beta,
@@ -94,8 +105,17 @@ impl Bent {
     /// One sample: the loop asked for `target` volts.
     #[inline]
     fn step(&mut self, target: f64, low: f64, high: f64, events: &mut Events) -> f64 {
-        let Self { law, beta, lambda, weights: w, .. } = *self;
-        let known = w.decay * self.output + w.last * self.last + w.before * self.before + w.now * lambda * target;
+        let Self {
+            law,
+            beta,
+            lambda,
+            weights: w,
+            ..
+        } = *self;
+        let known = w.decay * self.output
+            + w.last * self.last
+            + w.before * self.before
+            + w.now * lambda * target;
         // v = known + now·(S(u) − a·u), u = β(target − v); without the bracket it is the linear loop.
         let excess = |u: f64| law.rate(u) - law.unity * u;
         let linear = known;
@@ -107,7 +127,10 @@ impl Bent {
             rising_root(self.output, scale, |v| {
                 let u = beta * (target - v);
                 let (rate, slope) = law.rate_and_slope(u);
-                (v - known - w.now * (rate - law.unity * u), 1.0 + w.now * beta * (slope - law.unity))
+                (
+                    v - known - w.now * (rate - law.unity * u),
+                    1.0 + w.now * beta * (slope - law.unity),
+                )
             })
         };
         let held = v.clamp(low, high);
@@ -132,7 +155,9 @@ impl Bent {
 impl Runner for AmplifierRunner {
     fn run(&mut self, block: &mut [f64], _: &[f64]) {
         self.input.run(block);
-        block.iter_mut().for_each(|x| *x = *x * self.gain + self.excess);
+        block
+            .iter_mut()
+            .for_each(|x| *x = *x * self.gain + self.excess);
         noise::add_all(&mut self.noises, block);
         if self.mute {
             block.fill(0.0);

@@ -50,7 +50,10 @@ impl OpampStage {
             Load::resistor(section.number("ground"), reference)
         } else {
             let bias = section.optional("bias_resistance").unwrap_or(f64::INFINITY);
-            Load { capacitance: part.input_capacitance, ..Load::resistor(bias, reference) }
+            Load {
+                capacitance: part.input_capacitance,
+                ..Load::resistor(bias, reference)
+            }
         }
     }
 
@@ -78,24 +81,49 @@ impl OpampStage {
         }
         let reference = part.reference;
         let name = |cause: &str| format!("{}.{cause}", section.path);
-        let node = if before.blocked.is_some() { before.rest } else { before.loaded_rest(&load) };
+        let node = if before.blocked.is_some() {
+            before.rest
+        } else {
+            before.loaded_rest(&load)
+        };
         let division = before.division(load.conductance);
 
         // Gains: of the signal, and of what stands at the amplifier's own input.
-        let source = if inverting { ground + before.seen } else { ground };
+        let source = if inverting {
+            ground + before.seen
+        } else {
+            ground
+        };
         let noise_gain = 1.0 + feedback / source;
-        let gain = division * if inverting { -feedback / ground } else { 1.0 + feedback / ground };
+        let gain = division
+            * if inverting {
+                -feedback / ground
+            } else {
+                1.0 + feedback / ground
+            };
 
         // Quiescent output. A capacitor before an inverting input opens its source at DC.
-        let dc_noise_gain = if inverting && before.blocked.is_some() { 1.0 } else { noise_gain };
+        let dc_noise_gain = if inverting && before.blocked.is_some() {
+            1.0
+        } else {
+            noise_gain
+        };
         let bias_at_input = if inverting {
             0.0
         } else {
-            let source = if before.blocked.is_some() { f64::INFINITY } else { before.seen };
+            let source = if before.blocked.is_some() {
+                f64::INFINITY
+            } else {
+                before.seen
+            };
             part.bias_current / (1.0 / source + load.conductance)
         };
         let asked = if inverting {
-            let through = if before.blocked.is_some() { 0.0 } else { feedback / ground };
+            let through = if before.blocked.is_some() {
+                0.0
+            } else {
+                feedback / ground
+            };
             reference - through * (node - reference)
         } else {
             reference + noise_gain * (node - bias_at_input - reference)
@@ -103,8 +131,16 @@ impl OpampStage {
             + part.bias_current * feedback;
 
         // The feedback path draws its current to the reference (the virtual ground, when inverting).
-        let feedback_resistance = if inverting { feedback } else { feedback + ground };
-        let feedback_conductance = if feedback_resistance > 0.0 { 1.0 / feedback_resistance } else { 0.0 };
+        let feedback_resistance = if inverting {
+            feedback
+        } else {
+            feedback + ground
+        };
+        let feedback_conductance = if feedback_resistance > 0.0 {
+            1.0 / feedback_resistance
+        } else {
+            0.0
+        };
         let output = part.rest(asked, feedback_conductance, next);
 
         let mut warnings: Vec<String> = output.warning(&section.path).into_iter().collect();
@@ -127,18 +163,50 @@ impl OpampStage {
                 (true, Some(c)) => {
                     FirstOrderLaw::shelf(1.0, 1.0 / (c * (source + feedback)), 1.0 / (c * source))
                 }
-                _ => FirstOrderLaw { direct: noise_gain, residue: 0.0, rate: 1.0 },
+                _ => FirstOrderLaw {
+                    direct: noise_gain,
+                    residue: 0.0,
+                    rate: 1.0,
+                },
             };
-            list.push(("voltage_noise", part.voltage_noise, part.voltage_corner, Some(by_noise_gain)));
-            list.push(("current_noise", (part.current_noise * feedback).powi(2).sqrt(), part.current_corner, None));
+            list.push((
+                "voltage_noise",
+                part.voltage_noise,
+                part.voltage_corner,
+                Some(by_noise_gain),
+            ));
+            list.push((
+                "current_noise",
+                (part.current_noise * feedback).powi(2).sqrt(),
+                part.current_corner,
+                None,
+            ));
             if !inverting {
                 let z = source_impedance(before, &load);
-                let seen = FirstOrderLaw { direct: z.direct * noise_gain, residue: z.residue * noise_gain, rate: z.rate };
-                list.push(("source_current_noise", part.current_noise, part.current_corner, Some(seen)));
-                list.push(("bias_resistance", johnson_current_amplitude(load.conductance, temperature), 0.0, Some(seen)));
+                let seen = FirstOrderLaw {
+                    direct: z.direct * noise_gain,
+                    residue: z.residue * noise_gain,
+                    rate: z.rate,
+                };
+                list.push((
+                    "source_current_noise",
+                    part.current_noise,
+                    part.current_corner,
+                    Some(seen),
+                ));
+                list.push((
+                    "bias_resistance",
+                    johnson_current_amplitude(load.conductance, temperature),
+                    0.0,
+                    Some(seen),
+                ));
             }
             let resistors = johnson(feedback, temperature)
-                + if ground.is_finite() { johnson(ground, temperature) * (feedback / source).powi(2) } else { 0.0 };
+                + if ground.is_finite() {
+                    johnson(ground, temperature) * (feedback / source).powi(2)
+                } else {
+                    0.0
+                };
             list.push(("resistors", resistors.sqrt(), 0.0, None));
             list
         });
@@ -174,7 +242,11 @@ impl OpampStage {
     }
 
     fn loop_response(&self, frequency: f64) -> Complex64 {
-        if self.output.stuck() { 0.0.into() } else { FirstOrderLaw::low_pass(self.rate()).at(frequency) }
+        if self.output.stuck() {
+            0.0.into()
+        } else {
+            FirstOrderLaw::low_pass(self.rate()).at(frequency)
+        }
     }
 }
 
@@ -190,9 +262,17 @@ fn source_impedance(before: &Drive, load: &Load) -> FirstOrderLaw {
         Some(c) => {
             let bias = 1.0 / load.conductance;
             let rate = 1.0 / (c * (bias + before.seen));
-            FirstOrderLaw { direct, residue: (bias - direct) * rate, rate }
+            FirstOrderLaw {
+                direct,
+                residue: (bias - direct) * rate,
+                rate,
+            }
         }
-        None => FirstOrderLaw { direct, residue: 0.0, rate: 1.0 },
+        None => FirstOrderLaw {
+            direct,
+            residue: 0.0,
+            rate: 1.0,
+        },
     }
 }
 
@@ -202,7 +282,11 @@ impl Model for OpampStage {
     }
 
     fn title(&self) -> String {
-        let connection = if self.inverting { "inverting" } else { "non-inverting" };
+        let connection = if self.inverting {
+            "inverting"
+        } else {
+            "non-inverting"
+        };
         if self.unit == 0 {
             format!("op-amp, {connection}")
         } else {
@@ -212,12 +296,36 @@ impl Model for OpampStage {
 
     fn operating_point(&self) -> Vec<Reading> {
         vec![
-            Reading { name: "output", value: self.output.rest, dimension: Dimension::Volt },
-            Reading { name: "room above", value: self.output.high.0, dimension: Dimension::Volt },
-            Reading { name: "room below", value: -self.output.low.0, dimension: Dimension::Volt },
-            Reading { name: "gain", value: self.gain, dimension: Dimension::Number },
-            Reading { name: "noise gain", value: self.noise_gain, dimension: Dimension::Number },
-            Reading { name: "bandwidth", value: self.rate() / TAU, dimension: Dimension::Hertz },
+            Reading {
+                name: "output",
+                value: self.output.rest,
+                dimension: Dimension::Volt,
+            },
+            Reading {
+                name: "room above",
+                value: self.output.high.0,
+                dimension: Dimension::Volt,
+            },
+            Reading {
+                name: "room below",
+                value: -self.output.low.0,
+                dimension: Dimension::Volt,
+            },
+            Reading {
+                name: "gain",
+                value: self.gain,
+                dimension: Dimension::Number,
+            },
+            Reading {
+                name: "noise gain",
+                value: self.noise_gain,
+                dimension: Dimension::Number,
+            },
+            Reading {
+                name: "bandwidth",
+                value: self.rate() / TAU,
+                dimension: Dimension::Hertz,
+            },
         ]
     }
 
@@ -231,7 +339,10 @@ impl Model for OpampStage {
 
     fn noise(&self, frequency: f64) -> Vec<Share> {
         let gain_squared = self.loop_response(frequency).norm_sqr();
-        self.contributors.iter().map(|c| c.share(frequency, gain_squared)).collect()
+        self.contributors
+            .iter()
+            .map(|c| c.share(frequency, gain_squared))
+            .collect()
     }
 
     fn limits(&self) -> Vec<Limit> {

@@ -2,8 +2,8 @@
 
 use crate::design::Section;
 use crate::physics::opamp::SlopeLaw;
-use crate::signal::pole::FirstOrderLaw;
 use crate::quantity::Dimension;
+use crate::signal::pole::FirstOrderLaw;
 use crate::station::Limit;
 use crate::station::noise::Contributor;
 use crate::station::wiring::Load;
@@ -52,9 +52,18 @@ impl OutputRest {
     /// The limits as a station reports them.
     pub fn limits(&self, slew: f64) -> Vec<Limit> {
         vec![
-            Limit::Level { cause: self.high.1, at: self.high.0 },
-            Limit::Level { cause: self.low.1, at: self.low.0 },
-            Limit::Slope { cause: "slew rate", at: slew },
+            Limit::Level {
+                cause: self.high.1,
+                at: self.high.0,
+            },
+            Limit::Level {
+                cause: self.low.1,
+                at: self.low.0,
+            },
+            Limit::Slope {
+                cause: "slew rate",
+                at: slew,
+            },
         ]
     }
 
@@ -85,7 +94,9 @@ impl OpampPart {
         Self {
             gain_bandwidth,
             slew,
-            input_linear: section.optional("input_linear").unwrap_or(slew / (TAU * gain_bandwidth)),
+            input_linear: section
+                .optional("input_linear")
+                .unwrap_or(slew / (TAU * gain_bandwidth)),
             voltage_noise: section.number("noise_voltage"),
             voltage_corner: section.number("noise_voltage_corner"),
             current_noise: section.number("noise_current"),
@@ -104,7 +115,11 @@ impl OpampPart {
     pub fn rails(&self) -> (f64, f64) {
         let (low, high) = (self.supply.0 + self.swing.0, self.supply.1 - self.swing.1);
         // A supply too small for its swings leaves one point between them.
-        if low <= high { (low, high) } else { ((low + high) / 2.0, (low + high) / 2.0) }
+        if low <= high {
+            (low, high)
+        } else {
+            ((low + high) / 2.0, (low + high) / 2.0)
+        }
     }
 
     /// Where the output rests when the resistors ask for `asked` volts, and its room either way.
@@ -113,7 +128,8 @@ impl OpampPart {
     pub fn rest(&self, asked: f64, feedback_conductance: f64, next: &Load) -> OutputRest {
         let (low, high) = self.rails();
         let current = |v: f64| {
-            (v - self.reference) * feedback_conductance + (v - next.return_voltage) * next.conductance
+            (v - self.reference) * feedback_conductance
+                + (v - next.return_voltage) * next.conductance
         };
         let mut rest = asked.clamp(low, high);
         let dc_conductance = feedback_conductance + next.conductance;
@@ -125,21 +141,42 @@ impl OpampPart {
         let by_current = |sign: f64| {
             let room = (self.output_current - sign * current(rest)) / signal_conductance;
             // Nothing to drive, or no limit: no bound.
-            if room.is_nan() { f64::INFINITY } else { room.max(0.0) }
+            if room.is_nan() {
+                f64::INFINITY
+            } else {
+                room.max(0.0)
+            }
         };
         let pick = |rail: f64, current: f64, name: &'static str| {
-            if current < rail { (current, "output current") } else { (rail, name) }
+            if current < rail {
+                (current, "output current")
+            } else {
+                (rail, name)
+            }
         };
         let up = pick(high - rest, by_current(1.0), "upper rail");
         let down = pick(rest - low, by_current(-1.0), "lower rail");
-        OutputRest { rest, excess: asked - rest, high: up, low: (-down.0, down.1) }
+        OutputRest {
+            rest,
+            excess: asked - rest,
+            high: up,
+            low: (-down.0, down.1),
+        }
     }
 
     /// The input pair's slope law.
     pub fn slope_law(&self) -> SlopeLaw {
         // An infinite range (or the undefined one of infinite slew over infinite gain-bandwidth) is linear.
-        let linear = if self.input_linear.is_nan() { f64::INFINITY } else { self.input_linear };
-        SlopeLaw { unity: TAU * self.gain_bandwidth, linear, slew: self.slew }
+        let linear = if self.input_linear.is_nan() {
+            f64::INFINITY
+        } else {
+            self.input_linear
+        };
+        SlopeLaw {
+            unity: TAU * self.gain_bandwidth,
+            linear,
+            slew: self.slew,
+        }
     }
 
     /// Noise contributors from (cause, amplitude density, corner, path to the output that the resistors ask for).

@@ -36,24 +36,46 @@ pub struct LoadHead {
 
 impl LoadHead {
     /// From `[receiver.front_end]` with its detector, the light at rest and the `next` stage's load; `temperature` in K.
-    pub fn new(section: &Section, detector: Detector, light: LightAtRest, next: &Load, temperature: f64) -> Self {
+    pub fn new(
+        section: &Section,
+        detector: Detector,
+        light: LightAtRest,
+        next: &Load,
+        temperature: f64,
+    ) -> Self {
         let supply = section.number("supply");
         let cathode = section.optional_word("load_at") == Some("cathode");
         let own_conductance = 1.0 / section.number("load");
         let conductance = own_conductance + next.conductance;
-        let returns = if cathode { supply - next.return_voltage } else { next.return_voltage };
+        let returns = if cathode {
+            supply - next.return_voltage
+        } else {
+            next.return_voltage
+        };
         let from_next = next.conductance * returns;
         // At rest: u·G = what the next stage's return sends + photocurrent + junction, all falling or level in u.
         let rest = rising_root(0.0, 1e-12, |u| {
             let (i, g) = detector.junction.reverse_current(supply - u);
-            (u * conductance - from_next - light.total() - i, conductance + g)
+            (
+                u * conductance - from_next - light.total() - i,
+                conductance + g,
+            )
         });
         let diode = detector.around(supply - rest, false);
         let name = |place: &str, cause: &str| format!("{place}.{cause}");
         let contributors = vec![
-            Contributor::white(name(&detector.path, "shot"), shot(light.total() + detector.junction.shot_current(supply - rest))),
-            Contributor::white(name(&detector.path, "shunt"), johnson_current(detector.junction.shunt, temperature)),
-            Contributor::white(name(&section.path, "load"), johnson_current(own_conductance, temperature)),
+            Contributor::white(
+                name(&detector.path, "shot"),
+                shot(light.total() + detector.junction.shot_current(supply - rest)),
+            ),
+            Contributor::white(
+                name(&detector.path, "shunt"),
+                johnson_current(detector.junction.shunt, temperature),
+            ),
+            Contributor::white(
+                name(&section.path, "load"),
+                johnson_current(own_conductance, temperature),
+            ),
         ];
         Self {
             path: section.path.clone(),
@@ -73,13 +95,22 @@ impl LoadHead {
 
     /// Voltage at the output at rest, V.
     fn output(&self) -> f64 {
-        if self.sign > 0.0 { self.rest } else { self.supply - self.rest }
+        if self.sign > 0.0 {
+            self.rest
+        } else {
+            self.supply - self.rest
+        }
     }
 
     /// What it offers: a node solved with its load.
     pub fn drive(&self) -> Drive {
         let seen = 1.0 / (self.own_conductance + self.diode.conductance);
-        Drive { rest: self.output(), series: 0.0, seen, blocked: None }
+        Drive {
+            rest: self.output(),
+            series: 0.0,
+            seen,
+            blocked: None,
+        }
     }
 
     /// Impedance of the node at `frequency` (Hz), Ω.
@@ -105,11 +136,31 @@ impl Model for LoadHead {
 
     fn operating_point(&self) -> Vec<Reading> {
         vec![
-            Reading { name: "photocurrent, signal", value: self.light.signal, dimension: Dimension::Ampere },
-            Reading { name: "photocurrent, ambient", value: self.light.ambient, dimension: Dimension::Ampere },
-            Reading { name: "output", value: self.output(), dimension: Dimension::Volt },
-            Reading { name: "reverse bias left", value: self.supply - self.rest, dimension: Dimension::Volt },
-            Reading { name: "junction capacitance", value: self.diode.capacitance, dimension: Dimension::Farad },
+            Reading {
+                name: "photocurrent, signal",
+                value: self.light.signal,
+                dimension: Dimension::Ampere,
+            },
+            Reading {
+                name: "photocurrent, ambient",
+                value: self.light.ambient,
+                dimension: Dimension::Ampere,
+            },
+            Reading {
+                name: "output",
+                value: self.output(),
+                dimension: Dimension::Volt,
+            },
+            Reading {
+                name: "reverse bias left",
+                value: self.supply - self.rest,
+                dimension: Dimension::Volt,
+            },
+            Reading {
+                name: "junction capacitance",
+                value: self.diode.capacitance,
+                dimension: Dimension::Farad,
+            },
         ]
     }
 
@@ -129,14 +180,24 @@ impl Model for LoadHead {
 
     fn noise(&self, frequency: f64) -> Vec<Share> {
         let squared = self.impedance(frequency).norm_sqr();
-        self.contributors.iter().map(|c| c.share(frequency, squared)).collect()
+        self.contributors
+            .iter()
+            .map(|c| c.share(frequency, squared))
+            .collect()
     }
 
     fn limits(&self) -> Vec<Limit> {
-        let darkness = self.light.total() / (self.conductance + self.branch.map_or(0.0, |b| 1.0 / b.resistance));
+        let darkness = self.light.total()
+            / (self.conductance + self.branch.map_or(0.0, |b| 1.0 / b.resistance));
         vec![
-            Limit::Level { cause: "bias used up", at: self.sign * (self.supply - self.rest) },
-            Limit::Level { cause: "darkness", at: -self.sign * darkness },
+            Limit::Level {
+                cause: "bias used up",
+                at: self.sign * (self.supply - self.rest),
+            },
+            Limit::Level {
+                cause: "darkness",
+                at: -self.sign * darkness,
+            },
         ]
     }
 
@@ -266,23 +327,34 @@ impl Node {
             }
             None => (0.0, 0.0),
         };
-        let mut solved = Solved { drop: start, charge: 0.0, flow: 0.0, behind };
+        let mut solved = Solved {
+            drop: start,
+            charge: 0.0,
+            flow: 0.0,
+            behind,
+        };
         solved.drop = rising_root(start, 1e-9, |d| {
             let (q, c) = self.charge_at(d);
             let (i, g) = self.diode.current(-d);
             let flow = light + i - self.conductance * d - (d - behind) * branch;
-            (q - k * flow - charge, c + k * (self.conductance + g + branch))
+            (
+                q - k * flow - charge,
+                c + k * (self.conductance + g + branch),
+            )
         });
         let d = solved.drop;
         solved.charge = self.charge_at(d).0;
-        solved.flow = light + self.diode.current(-d).0 - self.conductance * d - (d - behind) * branch;
+        solved.flow =
+            light + self.diode.current(-d).0 - self.conductance * d - (d - behind) * branch;
         solved.behind = (behind + ratio * d) / (1.0 + ratio);
         solved
     }
 
     /// Slope of the branch's capacitor voltage times k, V.
     fn branch_move(&self, drop: f64, behind: f64) -> f64 {
-        self.branch.map_or(0.0, |b| self.k * (drop - behind) / (b.resistance * b.capacitance))
+        self.branch.map_or(0.0, |b| {
+            self.k * (drop - behind) / (b.resistance * b.capacitance)
+        })
     }
 
     /// One sample with the light's current `light` (A) away from rest; the drop away from rest, V.

@@ -37,7 +37,11 @@ struct MovingShot {
 impl MovingShot {
     /// `junction` is the part of the density that stands still, as a current, A.
     fn new(name: String, junction: f64, conditions: &Conditions) -> Self {
-        Self { unit: Contributor::white(name, 1.0).source(conditions), at_rest: junction, buffer: Vec::new() }
+        Self {
+            unit: Contributor::white(name, 1.0).source(conditions),
+            at_rest: junction,
+            buffer: Vec::new(),
+        }
     }
 
     /// Adds the shot noise of photocurrents `current` + `rest` (A) to `current`.

@@ -38,7 +38,13 @@ pub struct TransimpedanceHead {
 
 impl TransimpedanceHead {
     /// From `[receiver.front_end]` with its detector, the light at rest and the `next` stage's load; `temperature` in K.
-    pub fn new(section: &Section, detector: Detector, light: LightAtRest, next: &Load, temperature: f64) -> Self {
+    pub fn new(
+        section: &Section,
+        detector: Detector,
+        light: LightAtRest,
+        next: &Load,
+        temperature: f64,
+    ) -> Self {
         let part = OpampPart::new(section);
         let feedback = section.number("feedback");
         let bias = section.number("bias");
@@ -65,12 +71,19 @@ impl TransimpedanceHead {
                 format!("{}.shot", detector.path),
                 shot(light.total() + detector.junction.shot_current(bias + input)),
             ),
-            Contributor::white(format!("{}.shunt", detector.path), johnson_current(detector.junction.shunt, temperature)),
-            Contributor::white(own("feedback"), johnson_current(1.0 / feedback, temperature)),
-            Contributor::white(own("current_noise"), part.current_noise.powi(2)).with_corner(part.current_corner),
+            Contributor::white(
+                format!("{}.shunt", detector.path),
+                johnson_current(detector.junction.shunt, temperature),
+            ),
+            Contributor::white(
+                own("feedback"),
+                johnson_current(1.0 / feedback, temperature),
+            ),
+            Contributor::white(own("current_noise"), part.current_noise.powi(2))
+                .with_corner(part.current_corner),
         ];
-        let voltage =
-            Contributor::white(own("voltage_noise"), part.voltage_noise.powi(2)).with_corner(part.voltage_corner);
+        let voltage = Contributor::white(own("voltage_noise"), part.voltage_noise.powi(2))
+            .with_corner(part.voltage_corner);
         Self {
             path: section.path.clone(),
             detector,
@@ -100,7 +113,10 @@ impl TransimpedanceHead {
     fn admittances(&self, frequency: f64) -> (Complex64, Complex64) {
         let s = Complex64::new(0.0, TAU * frequency);
         let feedback = 1.0 / self.feedback + s * self.feedback_capacitor;
-        (feedback + self.diode.conductance + s * self.input_capacitance(), feedback)
+        (
+            feedback + self.diode.conductance + s * self.input_capacitance(),
+            feedback,
+        )
     }
 
     /// Output volts per ampere of photocurrent at `frequency` (Hz), Ω.
@@ -120,7 +136,9 @@ impl TransimpedanceHead {
         let total = self.input_capacitance() + self.feedback_capacitor;
         let natural = (unity / (self.feedback * total)).sqrt();
         let quality = 1.0
-            / (natural * (self.feedback * self.feedback_capacitor + (1.0 + self.feedback * self.diode.conductance) / unity));
+            / (natural
+                * (self.feedback * self.feedback_capacitor
+                    + (1.0 + self.feedback * self.diode.conductance) / unity));
         (natural.is_finite() && quality.is_finite()).then_some((natural / TAU, quality))
     }
 }
@@ -136,16 +154,48 @@ impl Model for TransimpedanceHead {
 
     fn operating_point(&self) -> Vec<Reading> {
         let mut readings = vec![
-            Reading { name: "photocurrent, signal", value: self.light.signal, dimension: Dimension::Ampere },
-            Reading { name: "photocurrent, ambient", value: self.light.ambient, dimension: Dimension::Ampere },
-            Reading { name: "output", value: self.output.rest, dimension: Dimension::Volt },
-            Reading { name: "room above", value: self.output.high.0, dimension: Dimension::Volt },
-            Reading { name: "room below", value: -self.output.low.0, dimension: Dimension::Volt },
-            Reading { name: "junction capacitance", value: self.diode.capacitance, dimension: Dimension::Farad },
+            Reading {
+                name: "photocurrent, signal",
+                value: self.light.signal,
+                dimension: Dimension::Ampere,
+            },
+            Reading {
+                name: "photocurrent, ambient",
+                value: self.light.ambient,
+                dimension: Dimension::Ampere,
+            },
+            Reading {
+                name: "output",
+                value: self.output.rest,
+                dimension: Dimension::Volt,
+            },
+            Reading {
+                name: "room above",
+                value: self.output.high.0,
+                dimension: Dimension::Volt,
+            },
+            Reading {
+                name: "room below",
+                value: -self.output.low.0,
+                dimension: Dimension::Volt,
+            },
+            Reading {
+                name: "junction capacitance",
+                value: self.diode.capacitance,
+                dimension: Dimension::Farad,
+            },
         ];
         if let Some((frequency, quality)) = self.resonance() {
-            readings.push(Reading { name: "loop frequency", value: frequency, dimension: Dimension::Hertz });
-            readings.push(Reading { name: "loop quality", value: quality, dimension: Dimension::Number });
+            readings.push(Reading {
+                name: "loop frequency",
+                value: frequency,
+                dimension: Dimension::Hertz,
+            });
+            readings.push(Reading {
+                name: "loop quality",
+                value: quality,
+                dimension: Dimension::Number,
+            });
         }
         readings
     }
@@ -161,7 +211,11 @@ impl Model for TransimpedanceHead {
 
     fn noise(&self, frequency: f64) -> Vec<Share> {
         let z = self.transimpedance(frequency);
-        let mut shares: Vec<Share> = self.currents.iter().map(|c| c.share(frequency, z.norm_sqr())).collect();
+        let mut shares: Vec<Share> = self
+            .currents
+            .iter()
+            .map(|c| c.share(frequency, z.norm_sqr()))
+            .collect();
         let noise_gain = self.admittances(frequency).0 * z;
         shares.push(self.voltage.share(frequency, noise_gain.norm_sqr()));
         shares
@@ -169,7 +223,10 @@ impl Model for TransimpedanceHead {
 
     fn limits(&self) -> Vec<Limit> {
         let mut limits = self.output.limits(self.part.slew);
-        limits.push(Limit::Level { cause: "darkness", at: -self.feedback * self.light.total() });
+        limits.push(Limit::Level {
+            cause: "darkness",
+            at: -self.feedback * self.light.total(),
+        });
         limits
     }
 

@@ -16,7 +16,14 @@ enum Kind {
     /// supply + v stands across the resistor, what drives it and the emitter.
     SeriesResistor { around: SeriesLoop, resistor: f64 },
     /// i = s·ln(1 + e^((bias + slope·v)/s)), s = slope·V_T, held at what the supply allows.
-    CurrentSink { bias: f64, slope: f64, softness: f64, sense: f64, compliance: SeriesLoop, room: f64 },
+    CurrentSink {
+        bias: f64,
+        slope: f64,
+        softness: f64,
+        sense: f64,
+        compliance: SeriesLoop,
+        room: f64,
+    },
 }
 
 impl Driver {
@@ -37,7 +44,10 @@ impl Driver {
             }
             _ => {
                 let resistor = section.number("resistor");
-                Kind::SeriesResistor { around: emitter.in_loop(resistor + behind), resistor }
+                Kind::SeriesResistor {
+                    around: emitter.in_loop(resistor + behind),
+                    resistor,
+                }
             }
         };
         Self { supply, kind }
@@ -55,8 +65,17 @@ impl Driver {
     #[inline]
     pub fn current(&self, rest: f64, input: f64, heat_voltage: f64) -> f64 {
         match &self.kind {
-            Kind::SeriesResistor { around, .. } => around.current(self.supply + input - heat_voltage).max(0.0),
-            Kind::CurrentSink { bias, slope, softness, compliance, room, .. } => {
+            Kind::SeriesResistor { around, .. } => {
+                around.current(self.supply + input - heat_voltage).max(0.0)
+            }
+            Kind::CurrentSink {
+                bias,
+                slope,
+                softness,
+                compliance,
+                room,
+                ..
+            } => {
                 let asked = soft_turn_off(bias + slope * (input - rest), *softness);
                 asked.min(compliance.current(room - heat_voltage).max(0.0))
             }
@@ -67,7 +86,9 @@ impl Driver {
     pub fn at_compliance(&self, current: f64, heat_voltage: f64) -> bool {
         match &self.kind {
             Kind::SeriesResistor { .. } => false,
-            Kind::CurrentSink { compliance, room, .. } => current >= compliance.current(room - heat_voltage).max(0.0),
+            Kind::CurrentSink {
+                compliance, room, ..
+            } => current >= compliance.current(room - heat_voltage).max(0.0),
         }
     }
 
@@ -83,10 +104,23 @@ impl Driver {
     pub fn slope(&self, input: f64, current: f64) -> f64 {
         match &self.kind {
             Kind::SeriesResistor { around, .. } => {
-                if self.supply + input > 0.0 { around.slope(current) } else { 0.0 }
+                if self.supply + input > 0.0 {
+                    around.slope(current)
+                } else {
+                    0.0
+                }
             }
-            Kind::CurrentSink { bias, slope, softness, .. } => {
-                if self.at_compliance(current, 0.0) { 0.0 } else { slope / (1.0 + (-bias / softness).exp()) }
+            Kind::CurrentSink {
+                bias,
+                slope,
+                softness,
+                ..
+            } => {
+                if self.at_compliance(current, 0.0) {
+                    0.0
+                } else {
+                    slope / (1.0 + (-bias / softness).exp())
+                }
             }
         }
     }
@@ -102,7 +136,9 @@ impl Driver {
     /// Resistances whose Johnson noise stands in series with the input, Ω, with their causes.
     pub fn noisy_resistances(&self, emitter: &Emitter) -> Vec<(&'static str, f64)> {
         match self.kind {
-            Kind::SeriesResistor { resistor, .. } => vec![("resistor", resistor + emitter.resistance())],
+            Kind::SeriesResistor { resistor, .. } => {
+                vec![("resistor", resistor + emitter.resistance())]
+            }
             Kind::CurrentSink { sense, .. } => vec![("sense", sense)],
         }
     }
@@ -111,5 +147,9 @@ impl Driver {
 /// s·ln(1 + e^(i/s)): the smooth ramp of a transistor that turns off.
 fn soft_turn_off(current: f64, softness: f64) -> f64 {
     let x = current / softness;
-    if x > 40.0 { current } else { softness * x.exp().ln_1p() }
+    if x > 40.0 {
+        current
+    } else {
+        softness * x.exp().ln_1p()
+    }
 }

@@ -55,7 +55,8 @@ impl Emitter {
     /// Fixes the forward voltage's drift for a rest at `current` (A).
     pub fn set_drift(&mut self, current: f64, temperature: f64) {
         let junction = diode::forward_voltage(current, self.slope_voltage, self.saturation, 0.0);
-        self.drift = self.count * diode::voltage_drift(junction, self.gap_voltage, temperature).min(0.0);
+        self.drift =
+            self.count * diode::voltage_drift(junction, self.gap_voltage, temperature).min(0.0);
     }
 
     /// Forward voltage against heat, V/K.
@@ -79,13 +80,20 @@ impl Emitter {
 
     /// Forward voltage, V, at `current` (A, ≥ 0) with the junction `heat` (K) above its rest.
     pub fn forward_voltage(&self, current: f64, heat: f64) -> f64 {
-        self.count * diode::forward_voltage(current.max(0.0), self.slope_voltage, self.saturation, self.series_resistance)
+        self.count
+            * diode::forward_voltage(
+                current.max(0.0),
+                self.slope_voltage,
+                self.saturation,
+                self.series_resistance,
+            )
             + self.drift * heat
     }
 
     /// dV_f/di, Ω, at `current` (A).
     pub fn voltage_slope(&self, current: f64) -> f64 {
-        self.count * (self.series_resistance + self.slope_voltage / (current.max(0.0) + self.saturation))
+        self.count
+            * (self.series_resistance + self.slope_voltage / (current.max(0.0) + self.saturation))
     }
 
     /// Flux, W, at `current` (A) with the junction `heating` (K) above the surroundings.

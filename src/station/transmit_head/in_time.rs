@@ -27,7 +27,9 @@ pub fn runner(head: &TransmitHead, conditions: &Conditions) -> Box<dyn Runner> {
             Curves::Straight => {
                 let mut heated = head.tangent.heated.section(conditions.rate);
                 if conditions.cold && heats {
-                    heated.start_output(-head.emitter.flux_by_heat(head.rest.current) * head.rest.heating);
+                    heated.start_output(
+                        -head.emitter.flux_by_heat(head.rest.current) * head.rest.heating,
+                    );
                 }
                 Law::Straight(heated)
             }
@@ -38,10 +40,17 @@ pub fn runner(head: &TransmitHead, conditions: &Conditions) -> Box<dyn Runner> {
                 current: head.rest.current,
                 flux: head.rest.flux,
                 heating: head.rest.heating,
-                warmth: if conditions.cold && heats { -head.rest.heating } else { 0.0 },
+                warmth: if conditions.cold && heats {
+                    -head.rest.heating
+                } else {
+                    0.0
+                },
                 heat: if heats { resistance / time } else { 0.0 },
                 power: head.rest.forward_voltage * head.rest.current - head.rest.flux,
-                weights: StepWeights::new(if heats { 1.0 / time } else { 0.0 }, 1.0 / conditions.rate),
+                weights: StepWeights::new(
+                    if heats { 1.0 / time } else { 0.0 },
+                    1.0 / conditions.rate,
+                ),
                 last: 0.0,
                 before: 0.0,
             })),
@@ -91,13 +100,18 @@ impl Bent {
     fn step(&mut self, v: f64, events: &mut Events) -> f64 {
         let drift = self.emitter.drift();
         let heat_voltage = drift * self.warmth;
-        let current = self.driver.current(self.input, self.input + v, heat_voltage);
+        let current = self
+            .driver
+            .current(self.input, self.input + v, heat_voltage);
         let flux = self.emitter.flux(current, self.heating + self.warmth);
         if self.heat > 0.0 {
             let power = current * self.emitter.forward_voltage(current, self.warmth) - flux;
             let forcing = self.heat * (power - self.power);
             let w = &self.weights;
-            self.warmth = w.decay * self.warmth + w.now * forcing + w.last * self.last + w.before * self.before;
+            self.warmth = w.decay * self.warmth
+                + w.now * forcing
+                + w.last * self.last
+                + w.before * self.before;
             self.before = self.last;
             self.last = forcing;
         }

@@ -64,15 +64,27 @@ struct Tangent {
 impl TransmitHead {
     /// What the driver shows to the stage before it.
     pub fn input_load(driver: &Section) -> Load {
-        Load::resistor(driver.optional("input_resistance").unwrap_or(f64::INFINITY), 0.0)
+        Load::resistor(
+            driver.optional("input_resistance").unwrap_or(f64::INFINITY),
+            0.0,
+        )
     }
 
     /// From `[transmitter.driver]` and `[transmitter.emitter]`, behind `before`; `temperature` in K.
-    pub fn new(driver_section: &Section, emitter_section: &Section, before: &Drive, temperature: f64) -> Self {
+    pub fn new(
+        driver_section: &Section,
+        emitter_section: &Section,
+        before: &Drive,
+        temperature: f64,
+    ) -> Self {
         let load = Self::input_load(driver_section);
         let division = before.division(load.signal_conductance());
         let behind = before.series * division;
-        let input = if before.blocked.is_some() { before.rest } else { before.loaded_rest(&load) };
+        let input = if before.blocked.is_some() {
+            before.rest
+        } else {
+            before.loaded_rest(&load)
+        };
         let vt = thermal_voltage(temperature);
         let mut emitter = Emitter::new(emitter_section, vt, temperature);
         let driver = Driver::new(driver_section, &emitter, behind, vt);
@@ -83,7 +95,13 @@ impl TransmitHead {
         let cold_flux = emitter.flux(current, 0.0);
         let heating = emitter.heating_at_rest(forward_voltage * current, cold_flux);
         let flux = emitter.flux(current, heating);
-        let rest = Rest { input, current, heating, forward_voltage, flux };
+        let rest = Rest {
+            input,
+            current,
+            heating,
+            forward_voltage,
+            flux,
+        };
         let tangent = tangent(&driver, &emitter, &rest);
 
         let driver_name = &driver_section.path;
@@ -91,12 +109,17 @@ impl TransmitHead {
             .noisy_resistances(&emitter)
             .into_iter()
             .map(|(cause, r)| {
-                Contributor::white(format!("{driver_name}.{cause}"), crate::physics::noise::johnson(r, temperature))
+                Contributor::white(
+                    format!("{driver_name}.{cause}"),
+                    crate::physics::noise::johnson(r, temperature),
+                )
             })
             .collect();
         let intensity = Contributor::white(
             format!("{}.intensity", emitter_section.path),
-            emitter_section.optional("intensity_noise").map_or(0.0, |db| 10f64.powf(db / 10.0)),
+            emitter_section
+                .optional("intensity_noise")
+                .map_or(0.0, |db| 10f64.powf(db / 10.0)),
         );
         let mut warnings = Vec::new();
         let limit = emitter.max_current;
@@ -116,7 +139,9 @@ impl TransmitHead {
             ));
         }
         if current <= 0.0 {
-            warnings.push(format!("{driver_name}: no current flows at rest; the emitter is dark"));
+            warnings.push(format!(
+                "{driver_name}: no current flows at rest; the emitter is dark"
+            ));
         }
         Self {
             path: "transmitter.emitter".into(),
@@ -144,7 +169,8 @@ impl TransmitHead {
 
     /// Quasi-static current at a deviation `x` (V) of the voltage before, A.
     pub fn current(&self, x: f64) -> f64 {
-        self.driver.current(self.rest.input, self.rest.input + self.division * x, 0.0)
+        self.driver
+            .current(self.rest.input, self.rest.input + self.division * x, 0.0)
     }
 }
 
@@ -155,16 +181,25 @@ fn tangent(driver: &Driver, emitter: &Emitter, rest: &Rest) -> Tangent {
     let flux_by_current = emitter.flux_slope(rest.current, rest.heating);
     let flux_by_heat = emitter.flux_by_heat(rest.current);
     // Heat W = V_f·i − P of all junctions; dW = a·dv + b·dΔT.
-    let heat_by_current = rest.forward_voltage + rest.current * emitter.voltage_slope(rest.current) - flux_by_current;
+    let heat_by_current =
+        rest.forward_voltage + rest.current * emitter.voltage_slope(rest.current) - flux_by_current;
     let a = heat_by_current * current;
     let b = heat_by_current * by_heat + rest.current * emitter.drift() - flux_by_heat;
     let (resistance, time) = emitter.thermal();
     let direct = flux_by_current * current;
     let slow = flux_by_current * by_heat + flux_by_heat;
     let heated = if resistance > 0.0 && time > 0.0 {
-        FirstOrderLaw { direct, residue: slow * resistance * a / time, rate: (1.0 - resistance * b) / time }
+        FirstOrderLaw {
+            direct,
+            residue: slow * resistance * a / time,
+            rate: (1.0 - resistance * b) / time,
+        }
     } else {
-        FirstOrderLaw { direct, residue: 0.0, rate: 1.0 }
+        FirstOrderLaw {
+            direct,
+            residue: 0.0,
+            rate: 1.0,
+        }
     };
     Tangent { heated, current }
 }
@@ -181,12 +216,36 @@ impl Model for TransmitHead {
     fn operating_point(&self) -> Vec<Reading> {
         let r = &self.rest;
         vec![
-            Reading { name: "bias current", value: r.current, dimension: Dimension::Ampere },
-            Reading { name: "forward voltage", value: r.forward_voltage, dimension: Dimension::Volt },
-            Reading { name: "flux", value: r.flux, dimension: Dimension::Watt },
-            Reading { name: "junction heating", value: r.heating, dimension: Dimension::Kelvin },
-            Reading { name: "current per volt", value: self.tangent.current, dimension: Dimension::Transconductance },
-            Reading { name: "supply power", value: self.supply * r.current, dimension: Dimension::Watt },
+            Reading {
+                name: "bias current",
+                value: r.current,
+                dimension: Dimension::Ampere,
+            },
+            Reading {
+                name: "forward voltage",
+                value: r.forward_voltage,
+                dimension: Dimension::Volt,
+            },
+            Reading {
+                name: "flux",
+                value: r.flux,
+                dimension: Dimension::Watt,
+            },
+            Reading {
+                name: "junction heating",
+                value: r.heating,
+                dimension: Dimension::Kelvin,
+            },
+            Reading {
+                name: "current per volt",
+                value: self.tangent.current,
+                dimension: Dimension::Transconductance,
+            },
+            Reading {
+                name: "supply power",
+                value: self.supply * r.current,
+                dimension: Dimension::Watt,
+            },
         ]
     }
 
@@ -199,14 +258,25 @@ impl Model for TransmitHead {
     }
 
     fn noise(&self, frequency: f64) -> Vec<Share> {
-        let by_input = (self.tangent.heated.at(frequency) * self.emitter.carriers().at(frequency)).norm_sqr();
-        let mut shares: Vec<Share> = self.at_input.iter().map(|c| c.share(frequency, by_input)).collect();
-        shares.push(self.intensity.share(frequency, self.rest.flux * self.rest.flux));
+        let by_input =
+            (self.tangent.heated.at(frequency) * self.emitter.carriers().at(frequency)).norm_sqr();
+        let mut shares: Vec<Share> = self
+            .at_input
+            .iter()
+            .map(|c| c.share(frequency, by_input))
+            .collect();
+        shares.push(
+            self.intensity
+                .share(frequency, self.rest.flux * self.rest.flux),
+        );
         shares
     }
 
     fn limits(&self) -> Vec<Limit> {
-        vec![Limit::Level { cause: "emitter dark", at: -self.rest.flux }]
+        vec![Limit::Level {
+            cause: "emitter dark",
+            at: -self.rest.flux,
+        }]
     }
 
     fn warnings(&self) -> Vec<String> {
@@ -214,7 +284,11 @@ impl Model for TransmitHead {
     }
 
     fn slowest_time(&self) -> f64 {
-        if self.tangent.heated.residue == 0.0 { 0.0 } else { 1.0 / self.tangent.heated.rate }
+        if self.tangent.heated.residue == 0.0 {
+            0.0
+        } else {
+            1.0 / self.tangent.heated.rate
+        }
     }
 
     fn runner(&self, conditions: &Conditions) -> Box<dyn Runner> {

@@ -24,10 +24,17 @@ pub fn runner(head: &TransimpedanceHead, conditions: &Conditions) -> Box<dyn Run
         law.linear = law.slew / law.unity;
     }
     if straight {
-        law = SlopeLaw { unity: law.unity, linear: f64::INFINITY, slew: f64::INFINITY };
+        law = SlopeLaw {
+            unity: law.unity,
+            linear: f64::INFINITY,
+            slew: f64::INFINITY,
+        };
     }
-    let (low, high) =
-        if straight { (f64::NEG_INFINITY, f64::INFINITY) } else { (head.output.low.0, head.output.high.0) };
+    let (low, high) = if straight {
+        (f64::NEG_INFINITY, f64::INFINITY)
+    } else {
+        (head.output.low.0, head.output.high.0)
+    };
     let bias = head.diode.reverse;
     let mut amplifier = Loop {
         diode: head.detector.around(bias, straight),
@@ -36,7 +43,11 @@ pub fn runner(head: &TransimpedanceHead, conditions: &Conditions) -> Box<dyn Run
         feedback_capacitor: head.feedback_capacitor,
         feedback: 1.0 / head.feedback,
         // A stuck output is pushed by what the input stands off.
-        push: if straight { 0.0 } else { head.part.offset - head.input },
+        push: if straight {
+            0.0
+        } else {
+            head.part.offset - head.input
+        },
         low,
         high,
         k: tr_bdf2::IMPLICIT / conditions.rate,
@@ -134,7 +145,10 @@ impl Loop {
     #[inline]
     fn charge(&self, x: f64, y: f64) -> (f64, f64) {
         let (q, c) = self.diode.charge(x);
-        (q + self.capacitance * x + self.feedback_capacitor * (x - y), c + self.capacitance + self.feedback_capacitor)
+        (
+            q + self.capacitance * x + self.feedback_capacitor * (x - y),
+            c + self.capacitance + self.feedback_capacitor,
+        )
     }
 
     /// One implicit stage from the known parts of charge and output, under light `i` (A) and noise `e` (V).
@@ -149,7 +163,8 @@ impl Loop {
             let (q, c) = self.charge(x, y);
             let (j, g) = self.diode.current(x);
             let flow = -(i + j + (x - y) * self.feedback);
-            let slope = c - self.feedback_capacitor * follows + k * (g + (1.0 - follows) * self.feedback);
+            let slope =
+                c - self.feedback_capacitor * follows + k * (g + (1.0 - follows) * self.feedback);
             (q - k * flow - charge, slope)
         });
         let rate = self.law.rate(self.push + e - x);
@@ -173,7 +188,13 @@ impl Loop {
             tr_bdf2::midway(voltage, self.voltage[0], self.voltage[1]),
         );
         let was = self.now;
-        let middle = self.solve(was.charge + self.k * was.flow, was.output + self.k * was.slope, i, e, was.input);
+        let middle = self.solve(
+            was.charge + self.k * was.flow,
+            was.output + self.k * was.slope,
+            i,
+            e,
+            was.input,
+        );
         let end = self.solve(
             tr_bdf2::MIDDLE * middle.charge + tr_bdf2::FIRST * was.charge,
             tr_bdf2::MIDDLE * middle.output + tr_bdf2::FIRST * was.output,
