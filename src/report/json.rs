@@ -151,9 +151,9 @@ fn unit_suffix(dimension: Dimension) -> &'static str {
     }
 }
 
-/// JSON has no infinity: a value without bound is null.
+/// JSON has no infinity: a value without bound is null. Nor is there any use in its minus nought.
 fn finite(value: f64) -> Option<f64> {
-    value.is_finite().then_some(value)
+    value.is_finite().then_some(value + 0.0)
 }
 
 fn limit(limit: &Limit) -> Option<Value> {

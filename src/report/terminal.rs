@@ -229,7 +229,7 @@ fn operating_lines(out: &mut String, f: &Findings) {
             .operating_point()
             .iter()
             .filter(|r| r.value.is_finite())
-            .map(|r| format!("{} {}", r.name, r.dimension.show(r.value)))
+            .map(|r| format!("{} {}", r.name, r.dimension.show(r.value + 0.0)))
             .collect();
         if !values.is_empty() {
             let _ = writeln!(out, "  {}: {}", station.path(), values.join(", "));
@@ -256,10 +256,10 @@ fn operating_lines(out: &mut String, f: &Findings) {
             out,
             "peak LED current",
             &Dimension::Ampere.show(peak),
-            &format!(
-                "of {} allowed",
-                Dimension::Ampere.show(f.link.max_current())
-            ),
+            &match f.link.max_current() {
+                most if most.is_finite() => format!("of {} allowed", Dimension::Ampere.show(most)),
+                _ => "no limit is given".into(),
+            },
         );
     }
 }

@@ -1,5 +1,6 @@
 //! The outside checks, one binary: a module a topic.
 
+mod commands;
 mod design;
 mod figure_methods;
 mod intermodulation;
