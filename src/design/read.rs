@@ -110,7 +110,12 @@ fn unknown_key(
         .map(|key| key.name)
         .chain(apart.iter().copied());
     let message = if owners.is_empty() {
-        format!("{path} has no key `{name}`")
+        let what = if matches!(field.node.tree, Tree::Table(_)) {
+            "section"
+        } else {
+            "key"
+        };
+        format!("{path} has no {what} `{name}`")
     } else {
         format!(
             "{path} of kind {} has no key `{name}`; it belongs to {}",

@@ -1,2 +1,3 @@
 //! The outside checks, one binary: a module a topic.
 mod design;
+mod quantity;
