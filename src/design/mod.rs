@@ -6,6 +6,7 @@
 mod address;
 mod catalogue;
 mod checks;
+mod complete;
 mod error;
 pub mod keys;
 mod load;

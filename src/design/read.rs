@@ -1,8 +1,9 @@
 //! A node of the file into a section: kinds, keys, units, ranges.
 
 use super::catalogue::Catalogue;
+use super::complete::complete;
 use super::error::{DesignError, Place};
-use super::keys::{Absent, Choice, Key, Kind, Range, Spec, What};
+use super::keys::{Key, Kind, Range, Spec, What};
 use super::node::{Field, Node, Tree};
 use super::section::{Entry, Origin, Section, Value};
 use super::suggest::did_you_mean;
@@ -31,6 +32,10 @@ pub(super) fn section(
         kind: spec.has_kinds().then(|| kind.name.to_string()),
         keys,
         place: Some(node.place.clone()),
+        kind_place: fields
+            .iter()
+            .find(|field| field.name == "kind")
+            .map(Field::place),
         ..Section::default()
     };
     for field in fields {
@@ -327,87 +332,6 @@ fn pairs(
         return Err(fail(&node.place, "takes at least two pairs"));
     }
     Ok(Value::Pairs(pairs))
-}
-
-/// Checks that nothing required is missing and that keys which stand for one another are not given together.
-pub(super) fn complete(
-    section: &Section,
-    choices: &[Choice],
-    class: Option<&str>,
-) -> Result<(), DesignError> {
-    let part = match class {
-        Some(class) if !section.given("part") => {
-            format!(", or name a part of class {class}: part = \"…\"")
-        }
-        _ => String::new(),
-    };
-    let missing = |key: &Key| {
-        let message = format!("{} has no `{}`", section.path, key.name);
-        section.fault(
-            None,
-            message,
-            format!("add for example: {} ({}){part}", key.line(), key.meaning),
-        )
-    };
-    for choice in choices {
-        let taken: Vec<&&[&str]> = choice
-            .ways
-            .iter()
-            .filter(|way| way.iter().any(|key| section.given(key)))
-            .collect();
-        match taken[..] {
-            [] if choice.needed => {
-                let firsts: Vec<&str> = choice.ways.iter().map(|way| way[0]).collect();
-                let lines: Vec<String> = firsts
-                    .iter()
-                    .filter_map(|name| section.key(name))
-                    .map(Key::line)
-                    .collect();
-                let message = format!("{} has none of {}", section.path, firsts.join(", "));
-                return Err(section.fault(
-                    None,
-                    message,
-                    format!("add one of: {}{part}", lines.join("; ")),
-                ));
-            }
-            [] => {}
-            [way] => {
-                for name in *way {
-                    if let Some(key) = section.key(name)
-                        && !section.given(name)
-                        && key.absent == Absent::Required
-                    {
-                        return Err(missing(key));
-                    }
-                }
-            }
-            [one, other, ..] => {
-                let given = |way: &[&'static str]| {
-                    way.iter()
-                        .copied()
-                        .find(|key| section.given(key))
-                        .unwrap_or_default()
-                };
-                let (one, other) = (given(one), given(other));
-                let message = format!("{}: `{one}` and `{other}` exclude each other", section.path);
-                return Err(section.fault(Some(other), message, "give one of the two"));
-            }
-        }
-    }
-    let chosen = |name: &str| {
-        choices
-            .iter()
-            .flat_map(|choice| choice.ways)
-            .any(|way| way.contains(&name))
-    };
-    match section
-        .keys
-        .iter()
-        .find(|key| key.absent == Absent::Required && !section.given(key.name) && !chosen(key.name))
-    {
-        Some(key) => Err(missing(key)),
-        None => Ok(()),
-    }
 }
 
 /// "path.key", or the key alone at the top level.

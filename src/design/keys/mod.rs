@@ -2,6 +2,7 @@
 //! reference all read it.
 
 mod ambient;
+mod electronics;
 mod parts;
 mod path;
 mod receiver;

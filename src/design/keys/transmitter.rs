@@ -1,6 +1,7 @@
 //! The driver and the emitter.
 
-use super::parts::{BIPOLAR, EMITTER_PART};
+use super::electronics::BIPOLAR;
+use super::parts::EMITTER_PART;
 use super::*;
 use Dimension::*;
 
