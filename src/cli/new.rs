@@ -52,7 +52,7 @@ pub fn run(args: &Args) -> Result<ExitCode, miette::Report> {
             path.display()
         )
     };
-    let mut file = tempfile::NamedTempFile::new_in(folder).map_err(|error| failed(&error))?;
+    let mut file = beside(folder).map_err(|error| failed(&error))?;
     file.write_all(text.as_bytes())
         .and_then(|()| file.as_file().sync_all())
         .map_err(|error| failed(&error))?;
@@ -75,6 +75,18 @@ pub fn run(args: &Args) -> Result<ExitCode, miette::Report> {
     super::parts::say(&format!(
         "{shown} written. Next: harklight render {shown} --input sent.wav --output received.wav\n"
     ))
+}
+
+/// A temporary file with the rights of an ordinary one.
+fn beside(folder: &Path) -> std::io::Result<tempfile::NamedTempFile> {
+    #[allow(unused_mut)]
+    let mut builder = tempfile::Builder::new();
+    #[cfg(unix)]
+    {
+        use std::os::unix::fs::PermissionsExt;
+        builder.permissions(std::fs::Permissions::from_mode(0o666));
+    }
+    builder.tempfile_in(folder)
 }
 
 /// NAME with its ending.

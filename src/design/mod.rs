@@ -100,6 +100,19 @@ impl Found<'_> {
     }
 }
 
+impl Found<'_> {
+    /// The value as it would be written: with its unit, or the word; `None` when it is absent without a default, a list or a table.
+    pub fn text(&self) -> Option<String> {
+        match (self.number(), self.key.dimension()) {
+            (Some(value), Some(dimension)) => Some(crate::quantity::format(value, dimension)),
+            _ => self
+                .section
+                .optional_word(self.key.name)
+                .map(str::to_string),
+        }
+    }
+}
+
 impl Design {
     /// Reads a design file, with `--set` edits ("path.distance=12 m") applied before the checks.
     ///

@@ -342,3 +342,69 @@ pub(super) fn dotted(path: &str, key: &str) -> String {
         format!("{path}.{key}")
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use std::sync::Arc;
+
+    use super::super::error::SourceText;
+    use super::super::keys::{Absent, SECTIONS};
+    use super::super::node;
+    use super::*;
+
+    #[test]
+    fn every_example_of_the_key_table_is_accepted_by_its_own_key() {
+        for key in SECTIONS
+            .iter()
+            .flat_map(|spec| spec.all_keys())
+            .filter(|key| key.name != "silence")
+        {
+            let source = Arc::new(SourceText {
+                name: "example".into(),
+                text: key.line(),
+            });
+            let root =
+                node::document(&source).unwrap_or_else(|error| panic!("{}: {error:?}", key.line()));
+            value(&root.fields()[0].node, key, "")
+                .unwrap_or_else(|error| panic!("{}: {error:?}", key.line()));
+        }
+    }
+
+    #[test]
+    fn every_default_lies_in_its_own_range() {
+        for key in SECTIONS.iter().flat_map(|spec| spec.all_keys()) {
+            match (key.what, key.absent) {
+                (What::Number(_, range), Absent::Value(value)) => {
+                    assert!(range.holds(value), "{}", key.name)
+                }
+                (What::Number(_, range), Absent::Infinite) => {
+                    assert!(range.holds(f64::INFINITY), "{}", key.name)
+                }
+                (What::Numbers { range, .. }, Absent::Values(values)) => {
+                    assert!(values.iter().all(|v| range.holds(*v)))
+                }
+                (What::Word(words), Absent::Word(word)) => {
+                    assert!(words.contains(&word), "{}", key.name)
+                }
+                (_, Absent::Required | Absent::Nothing) => {}
+                (what, absent) => panic!("{}: {what:?} cannot default to {absent:?}", key.name),
+            }
+        }
+    }
+
+    #[test]
+    fn no_key_stands_twice_in_one_kind() {
+        for spec in SECTIONS {
+            for kind in spec.kinds {
+                let mut names: Vec<&str> = spec.keys_of(kind).map(|key| key.name).collect();
+                names.sort_unstable();
+                assert!(
+                    names.windows(2).all(|pair| pair[0] != pair[1]),
+                    "{} {}: {names:?}",
+                    spec.path,
+                    kind.name
+                );
+            }
+        }
+    }
+}

@@ -88,7 +88,7 @@ pub(super) static DETECTOR: Spec = Spec {
     common: &[number(
         "count",
         Count,
-        FROM_ONE,
+        PIECES,
         "1",
         "identical detectors in parallel",
     )

@@ -117,7 +117,7 @@ pub(super) static EMITTER: Spec = Spec {
     common: &[number(
         "count",
         Count,
-        FROM_ONE,
+        PIECES,
         "1",
         "identical LEDs in series whose light adds",
     )

@@ -2,6 +2,7 @@
 
 mod faults;
 mod parts;
+mod robust;
 mod sets;
 
 use std::path::Path;
