@@ -3,6 +3,7 @@
 pub mod measure;
 pub mod new;
 pub mod parts;
+mod reference;
 pub mod render;
 
 use std::io::{ErrorKind, Write};
