@@ -4,6 +4,7 @@ pub mod measure;
 pub mod new;
 mod outputs;
 pub mod parts;
+mod reference;
 pub mod render;
 
 use std::process::ExitCode;
@@ -13,7 +14,8 @@ use clap::{Args, Parser, Subcommand};
 use outputs::{FiguresFile, print, say};
 
 use crate::design::{Design, DesignError};
-use crate::link::{Link, budget};
+use crate::link::{Link, StationEvents, budget};
+use crate::quantity::Dimension;
 use crate::render::programme::{Outcome, RenderError};
 use crate::render::test_signals::{Bench, measure};
 use crate::report::{Findings, json, terminal};
@@ -133,7 +135,8 @@ fn conclude(
     let budget = budget(link, bench.band);
     let lamps = link.lamps().iter().any(|l| l.lines().next().is_some());
     let verdicts = judge(design, &measured.figures, lamps);
-    let warnings = link.warnings();
+    let mut warnings = link.warnings();
+    warnings.extend(overdriven(link, programme, &measured.events));
     let findings = Findings {
         design,
         link,
@@ -168,6 +171,19 @@ fn conclude(
         }
     }
     Ok(ExitCode::from(u8::from(verdicts.iter().any(|v| !v.met))))
+}
+
+/// The warning of an emitter that carried more than it may.
+fn overdriven(link: &Link, programme: Option<&Outcome>, test: &[StationEvents]) -> Option<String> {
+    let rendered = programme.iter().flat_map(|p| p.channels.iter().flat_map(|c| &c.events));
+    let peak = rendered.chain(test).filter_map(|e| e.events.peak).reduce(f64::max)?;
+    (peak > link.max_current()).then(|| {
+        format!(
+            "transmitter.emitter: its current reached {}, above the maximum of {}",
+            Dimension::Ampere.show(peak),
+            Dimension::Ampere.show(link.max_current())
+        )
+    })
 }
 
 fn seed(args: &DesignArgs, design: &Design) -> u64 {

@@ -3,6 +3,7 @@
 use std::collections::BTreeMap;
 use std::sync::{Arc, OnceLock};
 
+use super::complete::complete;
 use super::error::{DesignError, SourceText};
 use super::keys::{CLASSES, Choice, Class};
 use super::node::{self, Field, Tree};
@@ -211,7 +212,7 @@ fn part(field: &Field) -> Result<Part, DesignError> {
             }
         }
     }
-    read::complete(&values, class.choices, None)?;
+    complete(&values, class.choices, None)?;
     Ok(Part {
         name,
         class,

@@ -34,7 +34,11 @@ pub(super) fn place_load(front_end: &mut Section, detector: &Section) -> Result<
         }
         let message =
             format!("a {detector} works into a load, not into a transimpedance amplifier");
-        return Err(front_end.fault(None, message, "write kind = \"load\", or use a photodiode"));
+        return Err(front_end.fault(
+            Some("kind"),
+            message,
+            "write kind = \"load\", or use a photodiode",
+        ));
     }
     let ways: &[&str] = match detector {
         "photodiode" => &["anode", "cathode"],

@@ -7,6 +7,7 @@ use sha2::{Digest, Sha256};
 
 use super::Design;
 use super::catalogue::Catalogue;
+use super::complete::complete;
 use super::error::{DesignError, SourceText};
 use super::keys::{self, Spec};
 use super::node::{self, Node, Tree};
@@ -224,7 +225,7 @@ impl File<'_> {
     ) -> Result<Section, DesignError> {
         let section = read::section(node, spec, path, self.catalogue, apart)?;
         if let Some(kind) = spec.kind(section.kind.as_deref().unwrap_or_default()) {
-            read::complete(&section, kind.choices, kind.class.map(|class| class.name))?;
+            complete(&section, kind.choices, kind.class.map(|class| class.name))?;
         }
         Ok(section)
     }

@@ -6,6 +6,7 @@
 mod address;
 mod catalogue;
 mod checks;
+mod complete;
 mod error;
 pub mod keys;
 mod load;
@@ -95,6 +96,19 @@ impl Found<'_> {
             (What::Number(..), Absent::Infinite) => Some(self.section.number(self.key.name)),
             (What::Number(..), _) => self.section.optional(self.key.name),
             _ => None,
+        }
+    }
+}
+
+impl Found<'_> {
+    /// The value as it would be written: with its unit, or the word; `None` when it is absent without a default, a list or a table.
+    pub fn text(&self) -> Option<String> {
+        match (self.number(), self.key.dimension()) {
+            (Some(value), Some(dimension)) => Some(crate::quantity::format(value, dimension)),
+            _ => self
+                .section
+                .optional_word(self.key.name)
+                .map(str::to_string),
         }
     }
 }

@@ -36,14 +36,11 @@ pub(super) struct Field {
 }
 
 impl Field {
-    /// From the start of the name to the end of the value, where both stand in one text; else the value. Of a table its header.
+    /// From the start of the name to the end of the value, where both stand in one text; else the value (a table with a
+    /// header starts before its name: then the header).
     pub fn place(&self) -> Place {
         let (name, value) = (&self.name_place, &self.node.place);
-        let is_table = matches!(self.node.tree, Tree::Table(_));
-        if Arc::ptr_eq(&name.source, &value.source)
-            && name.range.start < value.range.start
-            && !is_table
-        {
+        if Arc::ptr_eq(&name.source, &value.source) && name.range.start < value.range.start {
             Place {
                 source: name.source.clone(),
                 range: name.range.start..value.range.end,

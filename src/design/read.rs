@@ -1,8 +1,9 @@
 //! A node of the file into a section: kinds, keys, units, ranges.
 
 use super::catalogue::Catalogue;
+use super::complete::complete;
 use super::error::{DesignError, Place};
-use super::keys::{Absent, Choice, Key, Kind, Range, Spec, What};
+use super::keys::{Key, Kind, Range, Spec, What};
 use super::node::{Field, Node, Tree};
 use super::section::{Entry, Origin, Section, Value};
 use super::suggest::did_you_mean;
@@ -31,6 +32,10 @@ pub(super) fn section(
         kind: spec.has_kinds().then(|| kind.name.to_string()),
         keys,
         place: Some(node.place.clone()),
+        kind_place: fields
+            .iter()
+            .find(|field| field.name == "kind")
+            .map(Field::place),
         ..Section::default()
     };
     for field in fields {
@@ -110,7 +115,12 @@ fn unknown_key(
         .map(|key| key.name)
         .chain(apart.iter().copied());
     let message = if owners.is_empty() {
-        format!("{path} has no key `{name}`")
+        let what = if matches!(field.node.tree, Tree::Table(_)) {
+            "section"
+        } else {
+            "key"
+        };
+        format!("{path} has no {what} `{name}`")
     } else {
         format!(
             "{path} of kind {} has no key `{name}`; it belongs to {}",
@@ -324,92 +334,77 @@ fn pairs(
     Ok(Value::Pairs(pairs))
 }
 
-/// Checks that nothing required is missing and that keys which stand for one another are not given together.
-pub(super) fn complete(
-    section: &Section,
-    choices: &[Choice],
-    class: Option<&str>,
-) -> Result<(), DesignError> {
-    let part = match class {
-        Some(class) if !section.given("part") => {
-            format!(", or name a part of class {class}: part = \"…\"")
-        }
-        _ => String::new(),
-    };
-    let missing = |key: &Key| {
-        let message = format!("{} has no `{}`", section.path, key.name);
-        section.fault(
-            None,
-            message,
-            format!("add for example: {} ({}){part}", key.line(), key.meaning),
-        )
-    };
-    for choice in choices {
-        let taken: Vec<&&[&str]> = choice
-            .ways
-            .iter()
-            .filter(|way| way.iter().any(|key| section.given(key)))
-            .collect();
-        match taken[..] {
-            [] if choice.needed => {
-                let firsts: Vec<&str> = choice.ways.iter().map(|way| way[0]).collect();
-                let lines: Vec<String> = firsts
-                    .iter()
-                    .filter_map(|name| section.key(name))
-                    .map(Key::line)
-                    .collect();
-                let message = format!("{} has none of {}", section.path, firsts.join(", "));
-                return Err(section.fault(
-                    None,
-                    message,
-                    format!("add one of: {}{part}", lines.join("; ")),
-                ));
-            }
-            [] => {}
-            [way] => {
-                for name in *way {
-                    if let Some(key) = section.key(name)
-                        && !section.given(name)
-                        && key.absent == Absent::Required
-                    {
-                        return Err(missing(key));
-                    }
-                }
-            }
-            [one, other, ..] => {
-                let given = |way: &[&'static str]| {
-                    way.iter()
-                        .copied()
-                        .find(|key| section.given(key))
-                        .unwrap_or_default()
-                };
-                let (one, other) = (given(one), given(other));
-                let message = format!("{}: `{one}` and `{other}` exclude each other", section.path);
-                return Err(section.fault(Some(other), message, "give one of the two"));
-            }
-        }
-    }
-    let chosen = |name: &str| {
-        choices
-            .iter()
-            .flat_map(|choice| choice.ways)
-            .any(|way| way.contains(&name))
-    };
-    match section
-        .keys
-        .iter()
-        .find(|key| key.absent == Absent::Required && !section.given(key.name) && !chosen(key.name))
-    {
-        Some(key) => Err(missing(key)),
-        None => Ok(()),
-    }
-}
-
 /// "path.key", or the key alone at the top level.
 pub(super) fn dotted(path: &str, key: &str) -> String {
     if path.is_empty() {
         key.to_string()
     } else {
         format!("{path}.{key}")
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use std::sync::Arc;
+
+    use super::super::error::SourceText;
+    use super::super::keys::{Absent, SECTIONS};
+    use super::super::node;
+    use super::*;
+
+    #[test]
+    fn every_example_of_the_key_table_is_accepted_by_its_own_key() {
+        for key in SECTIONS
+            .iter()
+            .flat_map(|spec| spec.all_keys())
+            .filter(|key| key.name != "silence")
+        {
+            let source = Arc::new(SourceText {
+                name: "example".into(),
+                text: key.line(),
+            });
+            let root =
+                node::document(&source).unwrap_or_else(|error| panic!("{}: {error:?}", key.line()));
+            value(&root.fields()[0].node, key, "")
+                .unwrap_or_else(|error| panic!("{}: {error:?}", key.line()));
+        }
+    }
+
+    #[test]
+    fn every_default_lies_in_its_own_range() {
+        for key in SECTIONS.iter().flat_map(|spec| spec.all_keys()) {
+            match (key.what, key.absent) {
+                (What::Number(_, range), Absent::Value(value)) => {
+                    assert!(range.holds(value), "{}", key.name)
+                }
+                (What::Number(_, range), Absent::Infinite) => {
+                    assert!(range.holds(f64::INFINITY), "{}", key.name)
+                }
+                (What::Numbers { range, .. }, Absent::Values(values)) => {
+                    assert!(values.iter().all(|v| range.holds(*v)))
+                }
+                (What::Word(words), Absent::Word(word)) => {
+                    assert!(words.contains(&word), "{}", key.name)
+                }
+                (_, Absent::Required | Absent::Nothing) => {}
+                (what, absent) => panic!("{}: {what:?} cannot default to {absent:?}", key.name),
+            }
+        }
+    }
+
+    #[test]
+    fn no_key_stands_twice_in_one_kind() {
+        for spec in SECTIONS {
+            for kind in spec.kinds {
+                let mut names: Vec<&str> = spec.keys_of(kind).map(|key| key.name).collect();
+                names.sort_unstable();
+                assert!(
+                    names.windows(2).all(|pair| pair[0] != pair[1]),
+                    "{} {}: {names:?}",
+                    spec.path,
+                    kind.name
+                );
+            }
+        }
     }
 }

@@ -50,6 +50,7 @@ pub struct Section {
     pub(super) entries: BTreeMap<&'static str, Entry>,
     pub(super) keys: Vec<&'static Key>,
     pub(super) place: Option<Place>,
+    pub(super) kind_place: Option<Place>,
 }
 
 impl Section {
@@ -156,13 +157,16 @@ impl Section {
         &self.keys
     }
 
-    /// An error that underlines that key's line, or the section's header when the key is `None` or not given.
+    /// An error that underlines that key's line ("kind" too), or the section's header when the key is `None` or not given.
     pub fn fault(
         &self,
         key: Option<&str>,
         message: impl Into<String>,
         help: impl Into<String>,
     ) -> DesignError {
+        if let (Some("kind"), Some(place)) = (key, &self.kind_place) {
+            return DesignError::new(Some(place), message, help);
+        }
         let entry = key.and_then(|key| self.entries.get(key));
         DesignError::new(
             entry.map(|entry| &entry.place).or(self.place.as_ref()),

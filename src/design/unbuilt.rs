@@ -39,7 +39,7 @@ pub(super) fn refuse(section: &Section, spec_path: &str) -> Result<(), DesignErr
     let kind = section.kind.as_deref().unwrap_or_default();
     if KINDS.contains(&(spec_path, kind)) {
         let message = format!("{}: kind {kind} is not built yet", section.path);
-        return Err(section.fault(None, message, "another kind can be run"));
+        return Err(section.fault(Some("kind"), message, "another kind can be run"));
     }
     for (path, key) in KEYS {
         if path == spec_path && section.given(key) && section.optional(key) != Some(0.0) {

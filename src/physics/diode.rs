@@ -52,6 +52,27 @@ impl SeriesLoop {
         is * w.exp_m1()
     }
 
+    /// As [`Self::current`], from a `guess` (A) near by: two logarithms instead of several exponentials.
+    #[inline]
+    pub fn current_near(&self, drive: f64, guess: f64) -> f64 {
+        let mut i = guess;
+        for _ in 0..4 {
+            let with = self.saturation + i;
+            if with <= 0.0 {
+                break;
+            }
+            let short =
+                drive - self.resistance * i - self.slope_voltage * (with / self.saturation).ln();
+            let step = short / (self.resistance + self.slope_voltage / with);
+            i += step;
+            if step.abs() <= 1e-8 * with {
+                // The next step would be the square of this one.
+                return i;
+            }
+        }
+        self.current(drive)
+    }
+
     /// Slope di/d(drive), S, at the current `current`.
     pub fn slope(&self, current: f64) -> f64 {
         1.0 / (self.resistance + self.slope_voltage / (self.saturation + current))

@@ -30,29 +30,33 @@ pub struct Depletion {
 impl Depletion {
     /// Capacitance, F, at the reverse voltage `reverse` (V).
     pub fn capacitance(&self, reverse: f64) -> f64 {
-        let x = 1.0 + reverse / self.built_in;
-        if x >= 0.5 {
-            self.zero_bias * x.powf(-self.grading)
-        } else {
-            // Value and slope continuous at −φ/2.
-            self.zero_bias * 2f64.powf(self.grading) * (1.0 + 2.0 * self.grading * (0.5 - x))
-        }
+        self.charge_and_capacitance(reverse).1
     }
 
     /// Charge ∫C dV from zero bias to `reverse`, C.
     pub fn charge(&self, reverse: f64) -> f64 {
-        let m = 1.0 - self.grading;
-        let upper = |x: f64| self.zero_bias * self.built_in / m * (x.powf(m) - 1.0);
+        self.charge_and_capacitance(reverse).0
+    }
+
+    /// Charge, C, and capacitance, F, at `reverse` volts.
+    #[inline]
+    pub fn charge_and_capacitance(&self, reverse: f64) -> (f64, f64) {
+        let rest = 1.0 - self.grading;
+        let scale = self.zero_bias * self.built_in / rest;
         let x = 1.0 + reverse / self.built_in;
         if x >= 0.5 {
-            upper(x)
+            let power = if self.grading == 0.5 {
+                1.0 / x.sqrt()
+            } else {
+                x.powf(-self.grading)
+            };
+            (scale * (x * power - 1.0), self.zero_bias * power)
         } else {
-            let d = 0.5 - x;
-            upper(0.5)
-                - self.zero_bias
-                    * 2f64.powf(self.grading)
-                    * self.built_in
-                    * (d + self.grading * d * d)
+            // Value and slope continuous at −φ/2.
+            let (d, edge) = (0.5 - x, self.zero_bias * 2f64.powf(self.grading));
+            let charge = scale * (0.5f64.powf(rest) - 1.0)
+                - edge * self.built_in * (d + self.grading * d * d);
+            (charge, edge * (1.0 + 2.0 * self.grading * d))
         }
     }
 }
@@ -71,14 +75,24 @@ pub struct Junction {
 }
 
 impl Junction {
+    /// Exponent below which the exponential is no longer seen beside 1 in an f64.
+    const DEEP: f64 = -38.0;
+
     /// Largest exponent taken; the law is continued as a straight line beyond (currents of 10^100 A are nobody's diode).
     const STEEPEST: f64 = 230.0;
 
     /// Reverse current besides the photocurrent, A, and its derivative with respect to the reverse voltage, S.
     ///
     /// I_d(1 − e^(−V/nV_T)) for V > 0, less I_s(e^(−V/nV_T) − 1), plus V/R_sh (Shockley 1949; Sze).
+    #[inline]
     pub fn reverse_current(&self, reverse: f64) -> (f64, f64) {
         let x = -reverse / self.slope_voltage;
+        if x < Self::DEEP {
+            return (
+                self.saturation + self.dark + self.shunt * reverse,
+                self.shunt,
+            );
+        }
         let (e, slope) = if x > Self::STEEPEST {
             let top = Self::STEEPEST.exp();
             (top * (1.0 + x - Self::STEEPEST), top)

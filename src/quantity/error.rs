@@ -35,7 +35,7 @@ pub enum QuantityError {
     #[error("`{text}` is not a whole number from 0")]
     NotWhole { text: String, expected: Dimension },
     /// Three or four digits that are a number and a component code at once.
-    #[error("`{text}` could be read as {plain} or, as a digit code, as {coded}")]
+    #[error("`{text}` could be read as {plain} or, as a digit code, {coded}")]
     DigitCode {
         text: String,
         plain: String,

@@ -35,7 +35,8 @@ pub fn format(value: f64, dimension: Dimension) -> String {
     }
     let (digits, leading) = shortest(value);
     let (unit, shift) = chosen_unit(dimension, leading, value == 0.0);
-    let number = placed(value.is_sign_negative(), &digits, leading - shift);
+    let leading = if value == 0.0 { 0 } else { leading - shift };
+    let number = placed(value.is_sign_negative(), &digits, leading);
     if unit.is_empty() {
         number
     } else {

@@ -39,7 +39,10 @@ fn decibels(value: Option<f64>) -> String {
 
 fn percent(value: Option<f64>) -> String {
     value.map_or("–".into(), |v| {
-        // Three significant digits, plain as long as they can be read.
+        if v != 0.0 && v.abs() < 1e-4 {
+            return format!("{v:.1e} %");
+        }
+        // Three significant digits.
         let digits = (2 - v.abs().max(1e-9).log10().floor() as i32).clamp(0, 10) as usize;
         format!("{v:.digits$} %")
     })

@@ -1,6 +1,6 @@
 //! Lights that are not ours, as photocurrent on the detector: its mean and its flicker.
 
-use std::f64::consts::TAU;
+use std::f64::consts::{FRAC_PI_2, TAU};
 
 use super::air::Optics;
 use super::{Conditions, Reading};
@@ -63,10 +63,11 @@ impl Lamp {
         if kind == "incandescent" {
             // The filament follows the power, which beats at twice the mains.
             let phase = section.number("phase");
+            // It starts in the middle of its swing, so that a settled run sees no step.
             lines.push((
                 2.0 * section.number("mains"),
                 section.number("ripple"),
-                2.0 * phase,
+                2.0 * phase - FRAC_PI_2,
             ));
         }
         Ok(Self {

@@ -66,17 +66,7 @@ impl Contributor {
         }
         let white = conditions.stream(&self.name, self.unit)?;
         let scale = (self.density * conditions.rate / 2.0).sqrt();
-        // The 1/f part is independent of the white part and has a stream of its own.
-        let flicker = (self.corner > 0.0).then(|| Flicker {
-            stream: Gaussian::new(
-                conditions.seed,
-                conditions.channel,
-                &self.name,
-                &format!("{} flicker", self.unit),
-            ),
-            shaper: FlickerShaper::new(conditions.rate),
-            scale: scale * self.corner.sqrt(),
-        });
+        let flicker = (self.corner > 0.0).then(|| Flicker::new(self, conditions));
         let shape = self.shape.map(|law| law.section(conditions.rate));
         Some(NoiseSource {
             white,
@@ -88,10 +78,63 @@ impl Contributor {
     }
 }
 
+/// The 1/f part of a contributor: independent of the white part, with a stream of its own.
+///
+/// It is made at a lower rate and joined by straight lines, as nothing of it is heard beside the white part above many times
+/// the corner: at the lower rate's half it lies 13 dB under it.
 struct Flicker {
     stream: Gaussian,
     shaper: FlickerShaper,
     scale: f64,
+    /// Samples between two values.
+    stride: u32,
+    phase: u32,
+    value: f64,
+    slope: f64,
+}
+
+impl Flicker {
+    /// The lower rate over the corner, at least, and the lower rate itself, Hz.
+    const RATIO: f64 = 40.0;
+    const LOWEST_RATE: f64 = 4000.0;
+    const LONGEST_STRIDE: u32 = 64;
+
+    fn new(contributor: &Contributor, conditions: &Conditions) -> Self {
+        let lowest = (Self::RATIO * contributor.corner).max(Self::LOWEST_RATE);
+        let mut stride = 1;
+        while stride < Self::LONGEST_STRIDE && conditions.rate / f64::from(2 * stride) >= lowest {
+            stride *= 2;
+        }
+        let rate = conditions.rate / f64::from(stride);
+        let cause = format!("{} flicker", contributor.unit);
+        Self {
+            stream: Gaussian::new(
+                conditions.seed,
+                conditions.channel,
+                &contributor.name,
+                &cause,
+            ),
+            shaper: FlickerShaper::new(rate),
+            scale: (contributor.density * contributor.corner * rate / 2.0).sqrt(),
+            stride,
+            phase: stride,
+            value: 0.0,
+            slope: 0.0,
+        }
+    }
+
+    fn add_to(&mut self, block: &mut [f64]) {
+        for x in block {
+            if self.phase == self.stride {
+                self.phase = 0;
+                let next = self.scale * self.shaper.shape(self.stream.draw());
+                self.slope = (next - self.value) / f64::from(self.stride);
+            }
+            self.phase += 1;
+            self.value += self.slope;
+            *x += self.value;
+        }
+    }
 }
 
 /// A contributor that runs.
@@ -110,9 +153,7 @@ impl NoiseSource {
         self.white.fill(&mut self.buffer);
         self.buffer.iter_mut().for_each(|x| *x *= self.scale);
         if let Some(flicker) = &mut self.flicker {
-            for x in &mut self.buffer {
-                *x += flicker.scale * flicker.shaper.shape(flicker.stream.draw());
-            }
+            flicker.add_to(&mut self.buffer);
         }
         if let Some(shape) = &mut self.shape {
             shape.run(&mut self.buffer);

@@ -5,5 +5,6 @@ mod design;
 mod figure_methods;
 mod intermodulation;
 mod noise_streams;
+mod quantity;
 mod resampling;
 mod wav;

@@ -2,6 +2,7 @@
 //! reference all read it.
 
 mod ambient;
+mod electronics;
 mod parts;
 mod path;
 mod receiver;
@@ -111,6 +112,8 @@ const ACUTE: Range = Range::new(0.0, true, 90.0 * DEGREE, false);
 const POSITIVE_ACUTE: Range = Range::new(0.0, false, 90.0 * DEGREE, false);
 const HALF_SPACE: Range = Range::new(0.0, false, 90.0 * DEGREE, true);
 const FROM_ONE: Range = Range::new(1.0, true, f64::MAX, true);
+/// How many of a kind one may build in.
+const PIECES: Range = Range::new(1.0, true, 10_000.0, true);
 
 /// What stands behind a key.
 #[derive(Clone, Copy, Debug)]

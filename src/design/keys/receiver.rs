@@ -1,6 +1,7 @@
 //! The optics, the detector and the front end.
 
-use super::parts::{OP_AMP, PHOTOCELL, PHOTODIODE, PHOTOTRANSISTOR};
+use super::electronics::OP_AMP;
+use super::parts::{PHOTOCELL, PHOTODIODE, PHOTOTRANSISTOR};
 use super::*;
 use Dimension::*;
 
@@ -87,7 +88,7 @@ pub(super) static DETECTOR: Spec = Spec {
     common: &[number(
         "count",
         Count,
-        FROM_ONE,
+        PIECES,
         "1",
         "identical detectors in parallel",
     )

@@ -1,6 +1,6 @@
 //! The electrical stages, the same on both sides of the light.
 
-use super::parts::{BIPOLAR, OP_AMP};
+use super::electronics::{BIPOLAR, OP_AMP};
 use super::receiver::{REFERENCE, SUPPLY};
 use super::*;
 use Dimension::*;

@@ -1,6 +1,7 @@
 //! The driver and the emitter.
 
-use super::parts::{BIPOLAR, EMITTER_PART};
+use super::electronics::BIPOLAR;
+use super::parts::EMITTER_PART;
 use super::*;
 use Dimension::*;
 
@@ -116,7 +117,7 @@ pub(super) static EMITTER: Spec = Spec {
     common: &[number(
         "count",
         Count,
-        FROM_ONE,
+        PIECES,
         "1",
         "identical LEDs in series whose light adds",
     )

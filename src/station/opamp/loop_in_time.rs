@@ -116,23 +116,24 @@ impl Bent {
             + w.last * self.last
             + w.before * self.before
             + w.now * lambda * target;
-        // v = known + now·(S(u) − a·u), u = β(target − v); without the bracket it is the linear loop.
-        let excess = |u: f64| law.rate(u) - law.unity * u;
-        let linear = known;
-        let u = beta * (target - linear);
-        let v = if u.abs() < 1e-6 * law.linear.min(law.slew / law.unity) {
-            linear
-        } else {
-            let scale = 1e-13 * (1.0 + target.abs());
-            rising_root(self.output, scale, |v| {
-                let u = beta * (target - v);
-                let (rate, slope) = law.rate_and_slope(u);
-                (
-                    v - known - w.now * (rate - law.unity * u),
-                    1.0 + w.now * beta * (slope - law.unity),
-                )
-            })
-        };
+        // v = known + now·(S(u) − a·u), u = β(target − v); without the bend it is the linear loop, and near it two steps settle it.
+        let mut v = known;
+        let mut settled = false;
+        for _ in 0..3 {
+            let (bend, slope) = law.bend(beta * (target - v));
+            let step = (v - known - w.now * bend) / (1.0 + w.now * beta * slope);
+            v -= step;
+            settled = step.abs() <= 1e-13 * (1.0 + target.abs());
+            if settled {
+                break;
+            }
+        }
+        if !settled {
+            v = rising_root(self.output, 1e-13 * (1.0 + target.abs()), |v| {
+                let (bend, slope) = law.bend(beta * (target - v));
+                (v - known - w.now * bend, 1.0 + w.now * beta * slope)
+            });
+        }
         let held = v.clamp(low, high);
         let forcing = if held != v {
             events.clipped += 1;
@@ -140,10 +141,9 @@ impl Bent {
             lambda * held
         } else {
             let u = beta * (target - v);
-            if law.rate(u).abs() > 0.99 * law.slew {
-                events.slewing += 1;
-            }
-            lambda * target + excess(u)
+            let bend = law.bend(u).0;
+            events.slewing += u64::from((law.unity * u + bend).abs() > 0.99 * law.slew);
+            lambda * target + bend
         };
         self.before = self.last;
         self.last = forcing;

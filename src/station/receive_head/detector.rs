@@ -68,28 +68,38 @@ pub struct AroundRest {
     bent: Option<(Junction, Depletion)>,
 }
 
-impl AroundRest {
-    /// Reverse current away from rest, A, and its slope, S, for `deviation` volts more of reverse bias.
-    #[inline]
-    pub fn current(&self, deviation: f64) -> (f64, f64) {
-        match &self.bent {
-            Some((junction, _)) => {
-                let (i, g) = junction.reverse_current(self.reverse + deviation);
-                (i - self.current, g)
-            }
-            None => (self.conductance * deviation, self.conductance),
-        }
-    }
+/// The diode at one deviation of its reverse voltage, counted from rest.
+#[derive(Debug, Clone, Copy)]
+pub struct AtDeviation {
+    /// Reverse current, A, and its slope, S.
+    pub current: f64,
+    pub conductance: f64,
+    /// Charge, C, and its slope, F.
+    pub charge: f64,
+    pub capacitance: f64,
+}
 
-    /// Charge away from rest, C, and capacitance, F.
+impl AroundRest {
+    /// Everything for `deviation` volts more of reverse bias than at rest.
     #[inline]
-    pub fn charge(&self, deviation: f64) -> (f64, f64) {
-        match &self.bent {
-            Some((_, depletion)) if depletion.zero_bias > 0.0 => {
-                let v = self.reverse + deviation;
-                (depletion.charge(v) - self.charge, depletion.capacitance(v))
+    pub fn at(&self, deviation: f64) -> AtDeviation {
+        let mut at = AtDeviation {
+            current: self.conductance * deviation,
+            conductance: self.conductance,
+            charge: self.capacitance * deviation,
+            capacitance: self.capacitance,
+        };
+        if let Some((junction, depletion)) = &self.bent {
+            let v = self.reverse + deviation;
+            let (current, conductance) = junction.reverse_current(v);
+            at.current = current - self.current;
+            at.conductance = conductance;
+            if depletion.zero_bias > 0.0 {
+                let (charge, capacitance) = depletion.charge_and_capacitance(v);
+                at.charge = charge - self.charge;
+                at.capacitance = capacitance;
             }
-            _ => (self.capacitance * deviation, self.capacitance),
         }
+        at
     }
 }

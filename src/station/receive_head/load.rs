@@ -168,8 +168,8 @@ impl Model for LoadHead {
         let light = self.detector.responsivity * x;
         let g = self.conductance + self.branch.map_or(0.0, |b| 1.0 / b.resistance);
         let drop = rising_root(0.0, 1e-12, |d| {
-            let (i, slope) = self.diode.current(-d);
-            (d * g - light - i, g + slope)
+            let diode = self.diode.at(-d);
+            (d * g - light - diode.current, g + diode.conductance)
         });
         self.sign * drop
     }
@@ -220,13 +220,19 @@ impl Model for LoadHead {
 
     fn runner(&self, conditions: &Conditions) -> Box<dyn Runner> {
         let straight = conditions.curves == Curves::Straight;
-        let step = 1.0 / conditions.rate;
+        let k = tr_bdf2::IMPLICIT / conditions.rate;
+        let branch_ratio = self
+            .branch
+            .map_or(0.0, |b| k / (b.resistance * b.capacitance));
         let mut node = Node {
             diode: self.detector.around(self.supply - self.rest, straight),
             conductance: self.conductance,
             capacitance: self.capacitance,
-            branch: self.branch,
-            k: tr_bdf2::IMPLICIT * step,
+            branch_ratio,
+            branch_conductance: self
+                .branch
+                .map_or(0.0, |b| 1.0 / ((1.0 + branch_ratio) * b.resistance)),
+            k,
             drop: 0.0,
             charge: 0.0,
             flow: 0.0,
@@ -290,7 +296,9 @@ struct Node {
     diode: AroundRest,
     conductance: f64,
     capacitance: f64,
-    branch: Option<Branch>,
+    /// k over the branch's time constant, and its conductance with its own implicit part; 0 without a branch.
+    branch_ratio: f64,
+    branch_conductance: f64,
     /// Weight of the implicit stages, s.
     k: f64,
     drop: f64,
@@ -306,55 +314,50 @@ struct Node {
 impl Node {
     fn start_at(&mut self, drop: f64) {
         self.drop = drop;
-        self.charge = self.charge_at(drop).0;
+        self.charge = self.charge_at(drop);
     }
 
-    /// Charge away from rest at a drop, C, and its slope, F.
-    #[inline]
-    fn charge_at(&self, drop: f64) -> (f64, f64) {
-        let (q, c) = self.diode.charge(-drop);
-        (self.capacitance * drop - q, self.capacitance + c)
+    /// Charge away from rest at a drop, C.
+    fn charge_at(&self, drop: f64) -> f64 {
+        self.capacitance * drop - self.diode.at(-drop).charge
     }
 
     /// Solves charge(d) − k·flow(d) = `charge`, the branch's capacitor standing at `behind` before its own implicit part.
     #[inline]
     fn solve(&self, charge: f64, behind: f64, light: f64, start: f64) -> Solved {
         let k = self.k;
-        let (ratio, branch) = match self.branch {
-            Some(b) => {
-                let ratio = k / (b.resistance * b.capacitance);
-                (ratio, 1.0 / ((1.0 + ratio) * b.resistance))
-            }
-            None => (0.0, 0.0),
-        };
-        let mut solved = Solved {
-            drop: start,
-            charge: 0.0,
-            flow: 0.0,
-            behind,
-        };
-        solved.drop = rising_root(start, 1e-9, |d| {
-            let (q, c) = self.charge_at(d);
-            let (i, g) = self.diode.current(-d);
-            let flow = light + i - self.conductance * d - (d - behind) * branch;
+        let mut solved = Solved::default();
+        let drop = rising_root(start, 1e-9, |d| {
+            let diode = self.diode.at(-d);
+            let conductance = self.conductance + diode.conductance + self.branch_conductance;
+            let capacitance = self.capacitance + diode.capacitance;
+            solved = Solved {
+                drop: d,
+                charge: self.capacitance * d - diode.charge,
+                flow: light + diode.current
+                    - self.conductance * d
+                    - (d - behind) * self.branch_conductance,
+                behind,
+                capacitance,
+                conductance,
+            };
             (
-                q - k * flow - charge,
-                c + k * (self.conductance + g + branch),
+                solved.charge - k * solved.flow - charge,
+                capacitance + k * conductance,
             )
         });
-        let d = solved.drop;
-        solved.charge = self.charge_at(d).0;
-        solved.flow =
-            light + self.diode.current(-d).0 - self.conductance * d - (d - behind) * branch;
-        solved.behind = (behind + ratio * d) / (1.0 + ratio);
+        // The last step is so small that the tangent carries charge and flow over it.
+        let step = drop - solved.drop;
+        solved.drop = drop;
+        solved.charge += solved.capacitance * step;
+        solved.flow -= solved.conductance * step;
+        solved.behind = (behind + self.branch_ratio * drop) / (1.0 + self.branch_ratio);
         solved
     }
 
     /// Slope of the branch's capacitor voltage times k, V.
     fn branch_move(&self, drop: f64, behind: f64) -> f64 {
-        self.branch.map_or(0.0, |b| {
-            self.k * (drop - behind) / (b.resistance * b.capacitance)
-        })
+        self.branch_ratio * (drop - behind)
     }
 
     /// One sample with the light's current `light` (A) away from rest; the drop away from rest, V.
@@ -383,9 +386,12 @@ impl Node {
     }
 }
 
+#[derive(Default)]
 struct Solved {
     drop: f64,
     charge: f64,
     flow: f64,
     behind: f64,
+    capacitance: f64,
+    conductance: f64,
 }

@@ -23,6 +23,8 @@ enum Kind {
         sense: f64,
         compliance: SeriesLoop,
         room: f64,
+        /// What the supply allows the emitter when it is coldest, A: always allowed.
+        surely: f64,
     },
 }
 
@@ -40,6 +42,7 @@ impl Driver {
                     sense,
                     compliance: emitter.in_loop(sense),
                     room: supply - section.number("saturation"),
+                    surely: f64::NEG_INFINITY,
                 }
             }
             _ => {
@@ -60,35 +63,48 @@ impl Driver {
         }
     }
 
-    /// Current, A, at `input` volts where `rest` is the input's rest; `heat_voltage` (V) is what the junction's heat beyond rest has
-    /// added to the emitter's forward voltage.
+    /// Tells the driver the most that the emitter's forward voltage can lie above its rest, V (its junction then is as cold as
+    /// the surroundings), so that the supply's limit need not be reckoned for every sample.
+    pub fn set_coldest(&mut self, heat_voltage: f64) {
+        if let Kind::CurrentSink {
+            compliance,
+            room,
+            surely,
+            ..
+        } = &mut self.kind
+        {
+            *surely = compliance.current(*room - heat_voltage);
+        }
+    }
+
+    /// Current, A, and whether it is all that the supply allows, at `input` volts where `rest` is the input's rest.
+    ///
+    /// `heat_voltage` (V) is what the junction's heat beyond rest has added to the emitter's forward voltage, `near` (A) a current to start from.
     #[inline]
-    pub fn current(&self, rest: f64, input: f64, heat_voltage: f64) -> f64 {
+    pub fn current(&self, rest: f64, input: f64, heat_voltage: f64, near: f64) -> (f64, bool) {
         match &self.kind {
-            Kind::SeriesResistor { around, .. } => {
-                around.current(self.supply + input - heat_voltage).max(0.0)
-            }
+            Kind::SeriesResistor { around, .. } => (
+                around
+                    .current_near(self.supply + input - heat_voltage, near)
+                    .max(0.0),
+                false,
+            ),
             Kind::CurrentSink {
                 bias,
                 slope,
                 softness,
                 compliance,
                 room,
+                surely,
                 ..
             } => {
                 let asked = soft_turn_off(bias + slope * (input - rest), *softness);
-                asked.min(compliance.current(room - heat_voltage).max(0.0))
+                if asked < *surely {
+                    return (asked, false);
+                }
+                let allowed = compliance.current(room - heat_voltage).max(0.0);
+                (asked.min(allowed), asked >= allowed)
             }
-        }
-    }
-
-    /// Whether `current` is all that the supply allows.
-    pub fn at_compliance(&self, current: f64, heat_voltage: f64) -> bool {
-        match &self.kind {
-            Kind::SeriesResistor { .. } => false,
-            Kind::CurrentSink {
-                compliance, room, ..
-            } => current >= compliance.current(room - heat_voltage).max(0.0),
         }
     }
 
@@ -116,7 +132,7 @@ impl Driver {
                 softness,
                 ..
             } => {
-                if self.at_compliance(current, 0.0) {
+                if current < self.asked_at_rest() {
                     0.0
                 } else {
                     slope / (1.0 + (-bias / softness).exp())

@@ -38,6 +38,7 @@ pub fn runner(head: &TransmitHead, conditions: &Conditions) -> Box<dyn Runner> {
                 emitter: head.emitter.clone(),
                 input: head.rest.input,
                 current: head.rest.current,
+                near: head.rest.current,
                 flux: head.rest.flux,
                 heating: head.rest.heating,
                 warmth: if conditions.cold && heats {
@@ -80,6 +81,8 @@ struct Bent {
     emitter: Emitter,
     input: f64,
     current: f64,
+    /// Current of the last sample, A.
+    near: f64,
     flux: f64,
     heating: f64,
     /// Heat of the junction beyond its rest, K.
@@ -100,9 +103,10 @@ impl Bent {
     fn step(&mut self, v: f64, events: &mut Events) -> f64 {
         let drift = self.emitter.drift();
         let heat_voltage = drift * self.warmth;
-        let current = self
-            .driver
-            .current(self.input, self.input + v, heat_voltage);
+        let (current, limited) =
+            self.driver
+                .current(self.input, self.input + v, heat_voltage, self.near);
+        self.near = current;
         let flux = self.emitter.flux(current, self.heating + self.warmth);
         if self.heat > 0.0 {
             let power = current * self.emitter.forward_voltage(current, self.warmth) - flux;
@@ -116,7 +120,7 @@ impl Bent {
             self.last = forcing;
         }
         events.cut_off += u64::from(current < DARK * self.current);
-        events.clipped += u64::from(self.driver.at_compliance(current, heat_voltage));
+        events.clipped += u64::from(limited);
         events.peak = Some(events.peak.map_or(current, |p| p.max(current)));
         flux - self.flux
     }

@@ -87,13 +87,14 @@ impl TransmitHead {
         };
         let vt = thermal_voltage(temperature);
         let mut emitter = Emitter::new(emitter_section, vt, temperature);
-        let driver = Driver::new(driver_section, &emitter, behind, vt);
+        let mut driver = Driver::new(driver_section, &emitter, behind, vt);
 
-        let current = driver.current(input, input, 0.0);
+        let current = driver.current(input, input, 0.0, 0.0).0;
         let forward_voltage = emitter.forward_voltage(current, 0.0);
         emitter.set_drift(current, temperature);
         let cold_flux = emitter.flux(current, 0.0);
         let heating = emitter.heating_at_rest(forward_voltage * current, cold_flux);
+        driver.set_coldest(emitter.drift().abs() * heating.max(0.0));
         let flux = emitter.flux(current, heating);
         let rest = Rest {
             input,
@@ -169,8 +170,12 @@ impl TransmitHead {
 
     /// Quasi-static current at a deviation `x` (V) of the voltage before, A.
     pub fn current(&self, x: f64) -> f64 {
-        self.driver
-            .current(self.rest.input, self.rest.input + self.division * x, 0.0)
+        {
+            let input = self.rest.input + self.division * x;
+            self.driver
+                .current(self.rest.input, input, 0.0, self.rest.current)
+                .0
+        }
     }
 }
 

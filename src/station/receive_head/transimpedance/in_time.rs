@@ -57,7 +57,7 @@ pub fn runner(head: &TransimpedanceHead, conditions: &Conditions) -> Box<dyn Run
     };
     if conditions.cold {
         amplifier.now.output = -(head.output.rest).clamp(low, high);
-        amplifier.now.charge = amplifier.charge(0.0, amplifier.now.output).0;
+        amplifier.now.charge = -amplifier.feedback_capacitor * amplifier.now.output;
     }
     Box::new(TransimpedanceRunner {
         responsivity: head.detector.responsivity,
@@ -141,42 +141,50 @@ struct State {
 }
 
 impl Loop {
-    /// Charge of the input node, C, and its slope against the input alone, F.
-    #[inline]
-    fn charge(&self, x: f64, y: f64) -> (f64, f64) {
-        let (q, c) = self.diode.charge(x);
-        (
-            q + self.capacitance * x + self.feedback_capacitor * (x - y),
-            c + self.capacitance + self.feedback_capacitor,
-        )
-    }
-
     /// One implicit stage from the known parts of charge and output, under light `i` (A) and noise `e` (V).
     #[inline]
     fn solve(&self, charge: f64, output: f64, i: f64, e: f64, start: f64) -> State {
         let k = self.k;
+        let mut state = State::default();
+        let mut slopes = (0.0, 0.0, 0.0);
         let x = rising_root(start, 1e-9, |x| {
-            let (rate, steep) = self.law.rate_and_slope(self.push + e - x);
+            let u = self.push + e - x;
+            let (bend, bent) = self.law.bend(u);
+            let (rate, steep) = (self.law.unity * u + bend, self.law.unity + bent);
             let free = output + k * rate;
             let y = free.clamp(self.low, self.high);
-            let follows = if y == free { -k * steep } else { 0.0 };
-            let (q, c) = self.charge(x, y);
-            let (j, g) = self.diode.current(x);
-            let flow = -(i + j + (x - y) * self.feedback);
-            let slope =
-                c - self.feedback_capacitor * follows + k * (g + (1.0 - follows) * self.feedback);
-            (q - k * flow - charge, slope)
+            let diode = self.diode.at(x);
+            // Held at a limit, the output stands still.
+            let (slope, follows) = if y == free {
+                (rate, -k * steep)
+            } else {
+                (0.0, 0.0)
+            };
+            state = State {
+                input: x,
+                output: y,
+                charge: diode.charge + self.capacitance * x + self.feedback_capacitor * (x - y),
+                flow: -(i + diode.current + (x - y) * self.feedback),
+                slope,
+            };
+            slopes = (
+                diode.capacitance + self.capacitance + self.feedback_capacitor * (1.0 - follows),
+                diode.conductance + (1.0 - follows) * self.feedback,
+                follows,
+            );
+            (
+                state.charge - k * state.flow - charge,
+                slopes.0 + k * slopes.1,
+            )
         });
-        let rate = self.law.rate(self.push + e - x);
-        let free = output + k * rate;
-        let y = free.clamp(self.low, self.high);
+        // The last step is so small that the tangent carries everything over it.
+        let step = x - state.input;
         State {
             input: x,
-            output: y,
-            charge: self.charge(x, y).0,
-            flow: -(i + self.diode.current(x).0 + (x - y) * self.feedback),
-            // Held at a limit, the output stands still.
-            slope: if y == free { rate } else { 0.0 },
+            output: state.output + slopes.2 * step,
+            charge: state.charge + slopes.0 * step,
+            flow: state.flow - slopes.1 * step,
+            slope: state.slope + slopes.2 / k * step,
         }
     }
 

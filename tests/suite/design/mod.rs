@@ -1,5 +1,10 @@
 //! The design file: what is read, what is refused and where.
 
+mod faults;
+mod parts;
+mod robust;
+mod sets;
+
 use std::path::Path;
 
 use harklight::design::{Design, DesignError, Relation, Tolerance};
@@ -198,4 +203,41 @@ fn limits_and_tolerances_keep_their_units() {
             ("path.distance".to_string(), Tolerance::Share(0.05)),
         ]
     );
+}
+
+#[test]
+fn a_missing_file_and_a_file_that_is_no_text_are_told() {
+    let error = Design::load(Path::new("no/such/design.toml"), &[]).unwrap_err();
+    assert!(error.to_string().contains("no/such/design.toml"));
+    let folder = tempfile::tempdir().unwrap();
+    let path = folder.path().join("bytes.toml");
+    std::fs::write(&path, b"title = \"\xff\"").unwrap();
+    let error = Design::load(&path, &[]).unwrap_err();
+    assert!(error.to_string().contains("byte 9"), "{error}");
+}
+
+#[test]
+fn a_users_catalogue_stands_beside_the_built_in_one() {
+    let folder = tempfile::tempdir().unwrap();
+    let mine = "[my-diode]\nclass = \"photodiode\"\narea = \"4 mm²\"\nquantum_efficiency = 0.8\ndark_current = \"1 nA\"\n\
+                capacitance = \"40 pF\"\nbuilt_in = \"0.6 V\"\ngrading = 0.5\nsaturation_current = \"20 pA\"\nideality = 1.1\n";
+    std::fs::write(folder.path().join("mine.toml"), mine).unwrap();
+    let text = LINK
+        .replace("format = 1", "parts = \"mine.toml\"")
+        .replace("pin-7mm2", "my-diode");
+    let text = text.replace(
+        "\"receiver.detector.responsivity\" = [\"0.5 A/W\", \"0.65 A/W\"]",
+        "",
+    );
+    let design = Design::from_text("link.toml", &text, folder.path(), &[]).unwrap();
+    assert_eq!(design.detector.number("quantum_efficiency"), 0.8);
+    assert_eq!(design.detector.number("shunt_resistance"), f64::INFINITY);
+    std::fs::write(
+        folder.path().join("mine.toml"),
+        mine.replace("4 mm²", "4 mm"),
+    )
+    .unwrap();
+    let error = Design::from_text("link.toml", &text, folder.path(), &[]).unwrap_err();
+    assert_eq!(error.underlined(), Some("\"4 mm\""));
+    assert!(error.place().unwrap().source.name.ends_with("mine.toml"));
 }
