@@ -49,6 +49,18 @@ impl WholeFile {
         self.beside.persist(&self.target).map_err(|e| e.error)?;
         sync_folder(&self.target)
     }
+
+    /// As [`WholeFile::finish`], but replaces nothing: a file of the name, even one made meanwhile, is an error of the kind `AlreadyExists`.
+    ///
+    /// # Errors
+    /// A file that exists, or a machine that fails.
+    pub fn finish_new(self, file: File) -> io::Result<()> {
+        file.sync_all()?;
+        drop(file);
+        let kept = self.beside.persist_noclobber(&self.target);
+        kept.map_err(|e| e.error)?;
+        sync_folder(&self.target)
+    }
 }
 
 /// Whether two paths name one file (through links as well). False where either does not exist, and for `-`.

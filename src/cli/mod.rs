@@ -10,6 +10,7 @@ pub mod render;
 use std::process::ExitCode;
 
 use clap::{Args, Parser, Subcommand};
+use textwrap::WordSplitter;
 
 use outputs::{FiguresFile, print, say};
 
@@ -81,8 +82,18 @@ impl From<RenderError> for Failure {
     }
 }
 
+/// Errors as they are shown: names of parts are not broken at their hyphens.
+fn show_errors_whole() {
+    // It fails only where a hook is set already, which then shows them.
+    let _ = miette::set_hook(Box::new(|_| {
+        let options = miette::MietteHandlerOpts::new();
+        Box::new(options.word_splitter(WordSplitter::NoHyphenation).build())
+    }));
+}
+
 /// Runs the command line of this process.
 pub fn main() -> ExitCode {
+    show_errors_whole();
     let cli = match Cli::try_parse() {
         Ok(cli) => cli,
         Err(e) => {
@@ -175,8 +186,13 @@ fn conclude(
 
 /// The warning of an emitter that carried more than it may.
 fn overdriven(link: &Link, programme: Option<&Outcome>, test: &[StationEvents]) -> Option<String> {
-    let rendered = programme.iter().flat_map(|p| p.channels.iter().flat_map(|c| &c.events));
-    let peak = rendered.chain(test).filter_map(|e| e.events.peak).reduce(f64::max)?;
+    let rendered = programme
+        .iter()
+        .flat_map(|p| p.channels.iter().flat_map(|c| &c.events));
+    let peak = rendered
+        .chain(test)
+        .filter_map(|e| e.events.peak)
+        .reduce(f64::max)?;
     (peak > link.max_current()).then(|| {
         format!(
             "transmitter.emitter: its current reached {}, above the maximum of {}",

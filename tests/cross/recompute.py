@@ -190,8 +190,8 @@ def sweep_response(name, link, edges):
         side = slice(0, top + 1) if key == "band_low_hz" else slice(top, None)
         order = 1 if key == "band_low_hz" else -1
         edge = math.exp(np.interp(0.0, level[side][::order], np.log(grid[side])[::order]))
-        check(f"{name}: {key} from the sweep", edge, link.figures[key], 0.015 * edge,
-              "0.03 dB of ripple and the grid's smoothing, at 3 dB an octave")
+        check(f"{name}: {key} from the sweep", edge, link.figures[key], 5e-3 * edge,
+              "0.02 dB of ripple and of the grid's smoothing, at 3 dB an octave")
     at_tone = np.interp(math.log(link.test["tone_hz"]), np.log(grid), response)
     scale = volts(link.text["source"]["full_scale"])
     gentle = Link(link.program, link.design.name, "measure.level=-60 dB")

@@ -4,6 +4,7 @@
 
 mod bad_designs;
 mod bad_files;
+mod catalogue;
 mod contract;
 mod demo_clips;
 mod options;
