@@ -136,13 +136,12 @@ fn what_does_not_apply_is_null_and_says_why() {
     let figures = json["figures"].as_object().expect("an object");
     assert_eq!(figures.len(), FIGURES.len());
     for key in [
-        "snr_db",
-        "snr_a_db",
         "hum_db",
         "sti",
         "loudness_lufs",
         "clipped_samples",
         "band_low_hz",
+        "band_high_hz",
     ] {
         assert!(figures[key].is_null(), "{key}");
     }
@@ -154,18 +153,26 @@ fn what_does_not_apply_is_null_and_says_why() {
             "{key}: {value}, {reason:?}"
         );
     }
-    // An ideal link's distortion is below what the method can see: the floor is given and named.
-    let below: Vec<&str> = json["below_floor"]
+    // An ideal link's distortion and noise are below what the methods can see: the floors are given and named.
+    let below: BTreeSet<&str> = json["below_floor"]
         .as_array()
         .expect("a list")
         .iter()
         .filter_map(Value::as_str)
         .collect();
-    assert_eq!(
-        below,
-        ["thd_percent", "thd_db", "thd_n_percent", "sinad_db"]
-    );
-    assert!(number(&figures["thd_percent"]) > 0.0);
+    let floored = [
+        "thd_percent",
+        "thd_db",
+        "thd_n_percent",
+        "sinad_db",
+        "noise_rms_v",
+        "snr_db",
+        "snr_a_db",
+    ];
+    assert_eq!(below, BTreeSet::from(floored));
+    for key in floored {
+        assert!(number(&figures[key]) != 0.0, "{key}");
+    }
     assert_eq!(json["channels"], Value::Array(Vec::new()));
 }
 
