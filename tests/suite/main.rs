@@ -1,6 +1,8 @@
 //! The outside checks, one binary: a module a topic.
 
+mod bench;
 mod design;
+mod faces;
 mod figure_methods;
 mod intermodulation;
 mod noise_streams;
