@@ -4,6 +4,7 @@ mod bench;
 mod design;
 mod faces;
 mod figure_methods;
+mod golden_runs;
 mod intermodulation;
 mod noise_streams;
 mod quantity;

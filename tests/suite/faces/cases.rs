@@ -52,7 +52,9 @@ fn stage(text: &str) -> Draft {
 }
 
 fn opamp(keys: &str, part: &str) -> String {
-    format!("[[transmitter.stage]]\nname = \"amp\"\nkind = \"opamp\"\nsupply = [\"-9 V\", \"9 V\"]\n{keys}part = \"{part}\"\n")
+    format!(
+        "[[transmitter.stage]]\nname = \"amp\"\nkind = \"opamp\"\nsupply = [\"-9 V\", \"9 V\"]\n{keys}part = \"{part}\"\n"
+    )
 }
 
 const LED: &str = "part = \"ir-led-narrow\"\n";
