@@ -1,12 +1,15 @@
 //! The outside checks, one binary: a module a topic.
 
 mod bench;
+mod closed_forms;
 mod design;
 mod faces;
 mod figure_methods;
 mod golden_runs;
 mod intermodulation;
+mod link_figures;
 mod noise_streams;
 mod quantity;
+mod randomness;
 mod resampling;
 mod wav;
