@@ -53,7 +53,8 @@ fn a_cut_takes_the_signal_with_it() {
         .link();
     let mut block = crate::bench::tone(48e3, 1000.0, 1.0, 4800);
     link.chain(&with_interruptions(48e3, 1)).run(&mut block);
-    assert!(block.iter().all(|x| (x + 1.0).abs() < 1e-9));
+    // The amplifier without limits counts as a million times faster than the samples.
+    assert!(block.iter().all(|x| (x + 1.0).abs() < 1e-6));
 }
 
 /// Cuts at random: each waits an exponential time from the end of the one before, so that T seconds hold T/(1/rate + lasts) of them, with a
