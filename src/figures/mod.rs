@@ -15,7 +15,7 @@ mod result;
 
 use thiserror::Error;
 
-pub use result::Figures;
+pub use result::{Figures, NOISE_FLOOR};
 
 /// What a record was taken under.
 #[derive(Debug, Clone, Copy, PartialEq)]

@@ -9,6 +9,9 @@ use super::distortion::{Distortion, Residue, THD_FLOOR, THD_N_FLOOR};
 use super::intermodulation;
 use super::noise::{IdleNoise, snr_db};
 
+/// Idle noise below this part of the signal (−240 dB) is the arithmetic's own rounding.
+pub const NOISE_FLOOR: f64 = 1e-12;
+
 /// The figures, each under its contract's name with its unit. One that does not apply or was not asked for is `None` (null), never 0.
 #[derive(Debug, Clone, Default, PartialEq, Serialize)]
 pub struct Figures {
@@ -76,16 +79,18 @@ impl Figures {
         self.imd_twin_tone_percent = twin;
     }
 
-    /// Takes over the fundamental (volts rms) and the idle noise, and their ratios. Without noise there is no ratio, and that is said.
+    /// Takes over the fundamental (volts rms) and the idle noise, and their ratios, the noise at [`NOISE_FLOOR`] where it is below.
     pub fn set_signal_and_noise(&mut self, signal: f64, noise: &IdleNoise) {
         self.signal_rms_v = Some(signal);
-        self.noise_rms_v = Some(noise.rms);
-        self.snr_db = snr_db(signal, noise.rms);
-        self.snr_a_db = snr_db(signal, noise.rms_a);
-        for (figure, key) in [(self.snr_db, "snr_db"), (self.snr_a_db, "snr_a_db")] {
-            if figure.is_none() {
-                self.explain(key, "there is no signal or no noise at the output");
-            }
+        let floor = NOISE_FLOOR * signal;
+        let rms = self.floored(noise.rms, floor, &["noise_rms_v", "snr_db"]);
+        let rms_a = self.floored(noise.rms_a, floor, &["snr_a_db"]);
+        self.noise_rms_v = Some(rms);
+        self.snr_db = snr_db(signal, rms);
+        self.snr_a_db = snr_db(signal, rms_a);
+        if self.snr_db.is_none() {
+            self.explain("snr_db", "no signal reaches the output");
+            self.explain("snr_a_db", "no signal reaches the output");
         }
     }
 

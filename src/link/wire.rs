@@ -59,7 +59,7 @@ pub fn wire(design: &Design) -> Result<Link, DesignError> {
         .collect::<Result<Vec<_>, _>>()?;
     let light = LightAtRest {
         signal: received * detector.responsivity,
-        ambient: lamps.iter().map(Lamp::mean).sum(),
+        ambient: lamps.iter().fold(0.0, |sum, lamp| sum + lamp.mean()),
     };
     let responsivity = detector.responsivity;
     let receiver_at = stations.len();

@@ -9,8 +9,9 @@ use thiserror::Error;
 use crate::figures::programme::{LevelMeter, ResidualMeter};
 use crate::link::{Chain, Link, StationEvents};
 use crate::signal::resample::{Downsampler, RatioError, Upsampler};
-use crate::signal::wav::{SampleFormat, WavError, WavReader, WavSpec, WavWriter, same_file};
+use crate::signal::wav::{SampleFormat, WavError, WavReader, WavSpec, WavWriter};
 use crate::station::{Conditions, Curves};
+use crate::whole_file::same_file;
 
 /// What to render, and how.
 #[derive(Debug, Clone)]
@@ -94,6 +95,9 @@ pub fn auto_oversample(rate: u32) -> u32 {
         .unwrap_or(8)
 }
 
+/// The stems, in the order they are written.
+pub const STEMS: [&str; 3] = ["clean", "noise", "distortion"];
+
 /// Path of the stem `name` beside `output`: received.wav → received.noise.wav.
 pub fn stem_path(output: &Path, name: &str) -> PathBuf {
     let extension = output
@@ -129,7 +133,7 @@ pub fn render(
     };
     let mut paths = vec![job.output.clone()];
     if job.stems {
-        paths.extend(["clean", "noise", "distortion"].map(|s| stem_path(&job.output, s)));
+        paths.extend(STEMS.map(|s| stem_path(&job.output, s)));
     }
     if let Some(path) = paths
         .iter()

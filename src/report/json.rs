@@ -3,6 +3,8 @@
 use serde_json::{Map, Value, json};
 
 use super::Findings;
+use crate::figures::distortion::{THD_FLOOR, THD_N_FLOOR};
+use crate::figures::{NOISE_FLOOR, decibels};
 use crate::link::StationEvents;
 use crate::quantity::Dimension;
 use crate::render::programme::ChannelOutcome;
@@ -59,6 +61,11 @@ pub fn document(findings: &Findings) -> Value {
             "band_hz": [findings.bench.band.0, findings.bench.band.1],
             "noise_scatter_db": measured.noise_scatter_db,
             "events": events(&measured.events),
+            "floors": {
+                "thd_db": decibels(THD_FLOOR),
+                "thd_n_db": decibels(THD_N_FLOOR),
+                "noise_over_signal_db": decibels(NOISE_FLOOR),
+            },
         },
         "figures": figures,
         "reasons": figures.reasons,
@@ -151,9 +158,9 @@ fn unit_suffix(dimension: Dimension) -> &'static str {
     }
 }
 
-/// JSON has no infinity: a value without bound is null.
+/// JSON has no infinity: a value without bound is null. Nor is there any use in its minus nought.
 fn finite(value: f64) -> Option<f64> {
-    value.is_finite().then_some(value)
+    value.is_finite().then_some(value + 0.0)
 }
 
 fn limit(limit: &Limit) -> Option<Value> {

@@ -39,7 +39,10 @@ fn decibels(value: Option<f64>) -> String {
 
 fn percent(value: Option<f64>) -> String {
     value.map_or("–".into(), |v| {
-        // Three significant digits, plain as long as they can be read.
+        if v != 0.0 && v.abs() < 1e-4 {
+            return format!("{v:.1e} %");
+        }
+        // Three significant digits.
         let digits = (2 - v.abs().max(1e-9).log10().floor() as i32).clamp(0, 10) as usize;
         format!("{v:.digits$} %")
     })
@@ -229,7 +232,7 @@ fn operating_lines(out: &mut String, f: &Findings) {
             .operating_point()
             .iter()
             .filter(|r| r.value.is_finite())
-            .map(|r| format!("{} {}", r.name, r.dimension.show(r.value)))
+            .map(|r| format!("{} {}", r.name, r.dimension.show(r.value + 0.0)))
             .collect();
         if !values.is_empty() {
             let _ = writeln!(out, "  {}: {}", station.path(), values.join(", "));
@@ -256,10 +259,10 @@ fn operating_lines(out: &mut String, f: &Findings) {
             out,
             "peak LED current",
             &Dimension::Ampere.show(peak),
-            &format!(
-                "of {} allowed",
-                Dimension::Ampere.show(f.link.max_current())
-            ),
+            &match f.link.max_current() {
+                most if most.is_finite() => format!("of {} allowed", Dimension::Ampere.show(most)),
+                _ => "no limit is given".into(),
+            },
         );
     }
 }

@@ -2,6 +2,7 @@
 
 mod bench;
 mod closed_forms;
+mod commands;
 mod design;
 mod faces;
 mod figure_methods;
