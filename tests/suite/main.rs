@@ -10,6 +10,7 @@ mod golden_runs;
 mod intermodulation;
 mod link_figures;
 mod noise_streams;
+mod properties;
 mod quantity;
 mod randomness;
 mod resampling;

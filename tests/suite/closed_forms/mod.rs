@@ -5,6 +5,7 @@ mod amplifier;
 mod clipping;
 mod detector;
 mod exponential;
+mod loading;
 mod noise;
 mod passive;
 mod transimpedance;

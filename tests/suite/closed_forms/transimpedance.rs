@@ -1,6 +1,8 @@
 //! The transimpedance amplifier with a one-pole op-amp (Graeme 1996; formulas from memory, values computed): quality, half-power
 //! frequency, noise bandwidth NEB = ω_n·Q/4 and the noise that each cause leaves in all, at 300 K.
 
+use std::f64::consts::FRAC_1_SQRT_2;
+
 use super::{integral, near, share};
 use crate::bench::{Draft, quiet, reading, station};
 use harklight::signal::spectrum::Analyser;
@@ -28,7 +30,7 @@ const ROWS: [Row; 4] = [
     },
     Row {
         values: [1e6, 100e-12, 10e6, 10e-9, 1e-6, 1.78405e-12],
-        quality: 0.707107,
+        quality: FRAC_1_SQRT_2,
         corner: 125_046.0,
         bandwidth: 138_891.0,
         noise: [2.98058e-4, 4.79700e-5, 2.10964e-4],
@@ -42,7 +44,7 @@ const ROWS: [Row; 4] = [
     },
     Row {
         values: [100e3, 70e-12, 3e6, 18e-9, 10e-6, 8.60179e-12],
-        quality: 0.707107,
+        quality: FRAC_1_SQRT_2,
         corner: 246_465.0,
         bandwidth: 273_753.0,
         noise: [1.15022e-4, 2.12967e-5, 9.36591e-5],
