@@ -74,6 +74,9 @@ pub struct ChannelOutcome {
 pub struct Outcome {
     pub spec: WavSpec,
     pub frames: u64,
+    /// Change of level at the source, dB; what is said of the sent programme is without it.
+    pub drive: f64,
+    pub cold: bool,
     pub oversample: u32,
     /// Rate that the stations saw, Hz.
     pub link_rate: f64,
@@ -186,6 +189,8 @@ pub fn render(
     Ok(Outcome {
         spec,
         frames: done,
+        drive: job.drive,
+        cold: job.cold,
         oversample: factor,
         link_rate: f64::from(from.rate) * f64::from(factor),
         channels: lanes.into_iter().map(Lane::outcome).collect(),

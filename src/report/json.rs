@@ -74,6 +74,8 @@ pub fn document(findings: &Findings) -> Value {
         "programme": findings.programme.map(|p| json!({
             "frames": p.frames,
             "rate_hz": p.spec.rate,
+            "drive_db": p.drive,
+            "cold": p.cold,
             "oversample": p.oversample,
             "link_rate_hz": p.link_rate,
             "files": p.files.iter().map(|f| f.to_string_lossy()).collect::<Vec<_>>(),

@@ -29,7 +29,9 @@ fn heading(out: &mut String, text: &str) {
 
 /// One line: a name, a value, and what there is to say of it.
 fn line(out: &mut String, name: &str, value: &str, remark: &str) {
-    let text = format!("  {name:<22}{value:<16}{remark}");
+    // A name or a value too long for its column keeps two spaces behind it.
+    let text = format!("{:<24}", format!("  {name}  "));
+    let text = format!("{text}{:<16}{remark}", format!("{value}  "));
     let _ = writeln!(out, "{}", text.trim_end());
 }
 
@@ -67,18 +69,22 @@ fn programme_lines(out: &mut String, p: &Outcome) {
         &Dimension::Hertz.show(p.link_rate),
         &format!("{} samples of the link for each of the file", p.oversample),
     );
+    if p.drive != 0.0 {
+        let drive = Dimension::Decibel.show(p.drive);
+        line(out, "drive", &drive, "change of level at the source");
+    }
     for (n, c) in p.channels.iter().enumerate() {
         if p.channels.len() > 1 {
             let _ = writeln!(out, "  channel {}", n + 1);
         }
-        channel_lines(out, c);
+        channel_lines(out, c, p);
     }
     for file in &p.files {
         line(out, "written", &file.display().to_string(), "");
     }
 }
 
-fn channel_lines(out: &mut String, c: &ChannelOutcome) {
+fn channel_lines(out: &mut String, c: &ChannelOutcome, p: &Outcome) {
     let level = |db: Option<f64>| db.map_or("silent".into(), |v| format!("{v:.1} dBFS"));
     line(
         out,
@@ -117,20 +123,30 @@ fn channel_lines(out: &mut String, c: &ChannelOutcome) {
             ),
         );
     }
-    event_lines(out, &c.events);
+    event_lines(out, &c.events, p);
 }
 
-fn event_lines(out: &mut String, all: &[StationEvents]) {
+fn event_lines(out: &mut String, all: &[StationEvents], p: &Outcome) {
+    let whole = p.frames as f64 * f64::from(p.oversample);
     for StationEvents { path, events } in all {
         for (count, what) in [
-            (events.clipped, "samples at a limit"),
-            (events.slewing, "samples slewing"),
-            (events.cut_off, "samples dark"),
-            (events.interruptions, "interruptions"),
+            (events.clipped, "at a limit"),
+            (events.slewing, "slewing"),
+            (events.cut_off, "dark"),
         ] {
             if count > 0 {
-                line(out, path, &count.to_string(), what);
+                let time = Dimension::Second.show(count as f64 / p.link_rate);
+                let share = percent(Some(100.0 * count as f64 / whole));
+                line(out, path, &time, &format!("{what}, {share} of the time"));
             }
+        }
+        if events.interruptions > 0 {
+            line(
+                out,
+                path,
+                &events.interruptions.to_string(),
+                "interruptions",
+            );
         }
     }
 }

@@ -103,6 +103,18 @@ fn drive_changes_the_level_at_the_source() {
 }
 
 #[test]
+fn drive_and_cold_are_said_in_the_result() {
+    let (folder, _) = with_burst();
+    let done = folder
+        .render(&["--drive", "-6", "--cold", "--json"])
+        .expect(0);
+    assert_eq!(done.json()["programme"]["drive_db"], -6.0);
+    assert_eq!(done.json()["programme"]["cold"], true);
+    let text = folder.render(&["--drive", "-6"]).expect(0);
+    assert!(text.text().contains("-6 dB"), "{}", text.text());
+}
+
+#[test]
 fn samples_beyond_full_scale_are_counted_and_clipped_in_integers_only() {
     let folder = Folder::new();
     folder.sent(48_000, &burst(48_000, 1000.0, 1.0, 4800));
