@@ -19,8 +19,6 @@ use crate::signal::wav::SampleFormat;
 /// Run a WAV through a design and write what the receiver puts out
 #[derive(clap::Args)]
 pub struct Args {
-    #[command(flatten)]
-    design: DesignArgs,
     /// The WAV that is sent; - is standard input
     #[arg(long, value_name = "WAV")]
     input: PathBuf,
@@ -53,6 +51,8 @@ pub struct Args {
     /// Mix a stereo input to one channel
     #[arg(long)]
     mono: bool,
+    #[command(flatten)]
+    design: DesignArgs,
 }
 
 #[derive(Clone, Copy, ValueEnum)]

@@ -186,10 +186,9 @@ fn figure_lines(out: &mut String, f: &Findings) {
             &format!("SINAD {}", decibels(figures.sinad_db)),
         ),
     );
-    let scatter = f
-        .measured
-        .noise_scatter_db
-        .map_or(String::new(), |s| format!(" ± {s:.2} dB"));
+    let scatter = f.measured.noise_scatter_db.map_or(String::new(), |s| {
+        format!("; the record leaves ± {s:.2} dB on white noise")
+    });
     line(
         out,
         "SNR",
