@@ -45,7 +45,7 @@ const STEPS: usize = 40;
 /// Newton's method from `start`; should it not settle, y is eliminated by the second function and the first, which then rises
 /// in x alone, is bracketed: slower, but it cannot miss. `scale` is the size of a step that no longer matters. Gives the point
 /// at which `f` was last asked and the last step from there, for the caller to carry over by the tangents.
-#[inline]
+#[inline(always)]
 pub fn paired_root(
     start: [f64; 2],
     scale: f64,
@@ -70,15 +70,13 @@ pub fn paired_root(
         x += reach.bound(0, x, dx);
         y += reach.bound(1, y, dy);
     }
-    let [x, y] = bracketed(start, scale, &mut f);
-    // The last call of `f` is at the answer, as on the way above.
-    f(x, y);
-    ([x, y], [0.0; 2])
+    (bracketed(start, scale, &mut f), [0.0; 2])
 }
 
-/// The root by one bracketed search within another.
+/// The root by one bracketed search within another; `f` is asked there last.
 #[cold]
-fn bracketed(start: [f64; 2], scale: f64, f: &mut impl FnMut(f64, f64) -> Pair) -> [f64; 2] {
+#[inline(never)]
+fn bracketed(start: [f64; 2], scale: f64, f: &mut dyn FnMut(f64, f64) -> Pair) -> [f64; 2] {
     let fine = scale / 16.0;
     let mut y = start[1];
     let x = bracketed_root(start[0], fine, |x| {
@@ -94,6 +92,7 @@ fn bracketed(start: [f64; 2], scale: f64, f: &mut impl FnMut(f64, f64) -> Pair) 
         let p = f(x, y);
         (p.value[1], p.slope[1][1])
     });
+    f(x, y);
     [x, y]
 }
 

@@ -18,8 +18,12 @@ use crate::station::{Conditions, Limit, Model, Reading, Runner, Share};
 
 mod in_time;
 mod node;
+mod rest;
+mod small;
 
 use node::{Around, Nodes, State};
+use rest::{halved, settled, transistor};
+use small::Small;
 
 /// Part of the photocurrent that the base–collector junction takes, above which the transistor counts as saturated.
 const SATURATED: f64 = 0.1;
@@ -215,87 +219,6 @@ impl PhototransistorHead {
         let back = gbc - r.transport_x - r.transport_y;
         let still = base * load - gbc * back;
         ((ce + cc) * load + base * (cc + self.capacitance) - cc * back - gbc * cc) / still
-    }
-}
-
-/// The part, or `count` equal ones in parallel: currents and capacitances add, gains and times stay.
-fn transistor(section: &Section, count: f64, temperature: f64) -> Transistor {
-    Transistor {
-        thermal_voltage: crate::physics::constants::thermal_voltage(temperature),
-        saturation: count * section.number("saturation_current"),
-        gain: section.number("gain"),
-        low: count * section.number("gain_low_current"),
-        inverse_high: 1.0 / (count * section.number("gain_high_current")),
-        reverse_gain: section.number("reverse_gain"),
-        inverse_early: 1.0 / section.number("early_voltage"),
-        transit_time: section.number("transit_time"),
-        emitter_capacitance: count * section.number("emitter_capacitance"),
-        collector_capacitance: count * section.number("collector_capacitance"),
-    }
-}
-
-/// Junction voltages at rest under the photocurrent `light` (A), with `conductance` (S) and `from_next` (A) at the load.
-fn settled(
-    part: &Transistor,
-    base_conductance: f64,
-    (conductance, from_next): (f64, f64),
-    supply: f64,
-    light: f64,
-) -> [f64; 2] {
-    // Counted from V_BE = 0 and no drop.
-    let start = Around::new(part, base_conductance, [0.0, -supply], false);
-    let r = start.rest;
-    let s = Nodes::at_rest(start, conductance).solve(
-        [0.0; 3],
-        [
-            light - r.base_emitter - r.base_collector,
-            light + from_next + r.transport - r.base_collector,
-        ],
-        &State::default(),
-    );
-    [s.x, s.y - supply]
-}
-
-/// Junction voltages at which the base–collector junction takes half of the photocurrent `light` (A).
-fn halved(part: &Transistor, base_conductance: f64, light: f64) -> [f64; 2] {
-    let half = light / 2.0;
-    let v_bc = part.thermal_voltage * (half * part.reverse_gain / part.saturation).ln_1p();
-    let v_be = crate::signal::implicit::rising_root(v_bc, 1e-12, |v| {
-        let f = part.at(v, v_bc);
-        (
-            f.base_emitter + base_conductance * v - half,
-            f.base_emitter_x + base_conductance,
-        )
-    });
-    [v_be, v_bc]
-}
-
-/// The two nodes for small signals at one frequency: rows base and load, columns x and u (y = x + u).
-struct Small {
-    base: [Complex64; 2],
-    load: [Complex64; 2],
-}
-
-impl Small {
-    /// Around `device`, at `omega` (rad/s), with the admittance `across` (S) at the load.
-    fn new(device: &Around, omega: f64, across: Complex64) -> Self {
-        let r = &device.rest;
-        let s = Complex64::new(0.0, omega);
-        let emitter = r.base_emitter_x + device.base_conductance + s * r.emitter_charge_x;
-        let collector = r.base_collector_y + s * r.collector_charge_y;
-        Self {
-            base: [emitter + collector, collector],
-            load: [
-                collector - r.transport_x - r.transport_y,
-                across + collector - r.transport_y,
-            ],
-        }
-    }
-
-    /// Drop across the load, V, for currents into the base and into the load's node, A.
-    fn drop(&self, [base, load]: [f64; 2]) -> Complex64 {
-        let determinant = self.base[0] * self.load[1] - self.base[1] * self.load[0];
-        (self.base[0] * load - self.load[0] * base) / determinant
     }
 }
 

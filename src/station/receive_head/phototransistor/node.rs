@@ -95,6 +95,8 @@ pub struct State {
     pub load_flow: f64,
     /// Voltage on the branch's capacitor, V.
     pub behind: f64,
+    /// What x and y have moved in the last sample, V.
+    pub pace: [f64; 2],
 }
 
 impl State {
@@ -120,8 +122,8 @@ pub struct Nodes {
     pub reach: Reach,
 }
 
-/// Size of a last step, V: the tangent that carries over it errs by its square over V_T, some 10⁻¹³ of a current.
-const SCALE: f64 = 1e-8;
+/// Size of a last step, V: the tangent that carries over it errs by half its square over V_T², 3·10⁻¹¹ of a current.
+const SCALE: f64 = 2e-7;
 
 impl Nodes {
     /// The static law with `conductance` across the load.
@@ -149,26 +151,18 @@ impl Nodes {
     ) -> State {
         let (k, w) = (self.k, self.charges);
         let across = self.conductance + self.branch_conductance;
-        let mut s = State::default();
+        let own = w * self.capacitance + k * across;
+        // What is known: all charge that the unknowns must make up, the currents' share included.
+        let base_known = base + k * base_in;
+        let load_known = load + k * (load_in + self.branch_conductance * behind);
         let mut at = Moved::default();
-        let (_, step) = paired_root([start.x, start.y], SCALE, &self.reach, |x, y| {
+        let (from, step) = paired_root([start.x, start.y], SCALE, &self.reach, |x, y| {
             at = self.device.at(x, y);
-            let u = y - x;
-            s = State {
-                x,
-                y,
-                base_charge: w * (at.emitter_charge + at.collector_charge),
-                load_charge: w * (self.capacitance * u + at.collector_charge),
-                base_flow: base_in - at.base,
-                load_flow: load_in + at.load - across * u + self.branch_conductance * behind,
-                behind,
-            };
-            let own = w * self.capacitance + k * across;
             let collector = w * at.collector_capacitance;
             Pair {
                 value: [
-                    s.base_charge - k * s.base_flow - base,
-                    s.load_charge - k * s.load_flow - load,
+                    w * (at.emitter_charge + at.collector_charge) + k * at.base - base_known,
+                    w * at.collector_charge + own * (y - x) - k * at.load - load_known,
                 ],
                 slope: [
                     [
@@ -183,16 +177,23 @@ impl Nodes {
             }
         });
         // The last step is so small that the tangents carry everything over it.
-        let [x, y] = step;
+        let [dx, dy] = step;
+        let (x, y) = (from[0] + dx, from[1] + dy);
         let u = y - x;
-        s.x += x;
-        s.y += y;
-        s.base_charge += w * (at.emitter_capacitance * x + at.collector_capacitance * y);
-        s.load_charge += w * (self.capacitance * u + at.collector_capacitance * y);
-        s.base_flow -= at.base_slope[0] * x + at.base_slope[1] * y;
-        s.load_flow += at.load_slope[0] * x + at.load_slope[1] * y - across * u;
-        s.behind = (behind + self.branch_ratio * s.drop()) / (1.0 + self.branch_ratio);
-        s
+        let collector_charge = at.collector_charge + at.collector_capacitance * dy;
+        let emitter_charge = at.emitter_charge + at.emitter_capacitance * dx;
+        let base_moved = at.base + at.base_slope[0] * dx + at.base_slope[1] * dy;
+        let load_moved = at.load + at.load_slope[0] * dx + at.load_slope[1] * dy;
+        State {
+            x,
+            y,
+            base_charge: w * (emitter_charge + collector_charge),
+            load_charge: w * (self.capacitance * u + collector_charge),
+            base_flow: base_in - base_moved,
+            load_flow: load_in + load_moved - across * u + self.branch_conductance * behind,
+            behind: (behind + self.branch_ratio * u) / (1.0 + self.branch_ratio),
+            pace: [0.0; 2],
+        }
     }
 }
 
@@ -264,6 +265,7 @@ impl Advance {
             base_flow: -at.base,
             load_flow: at.load - n.conductance * drop - branch * (drop - behind),
             behind,
+            pace: [0.0; 2],
         }
     }
 
@@ -282,7 +284,11 @@ impl Advance {
                 was.behind + n.branch_ratio * (was.drop() - was.behind),
             ],
             between,
-            was,
+            &State {
+                x: was.x + tr_bdf2::GAMMA * was.pace[0],
+                y: was.y + tr_bdf2::GAMMA * was.pace[1],
+                ..*was
+            },
         );
         let join = |middle: f64, first: f64| tr_bdf2::MIDDLE * middle + tr_bdf2::FIRST * first;
         let second = join(middle.base_charge, was.base_charge);
@@ -295,7 +301,7 @@ impl Advance {
             y: was.y + (middle.y - was.y) / tr_bdf2::GAMMA,
             ..middle
         };
-        n.solve(
+        let now = n.solve(
             [
                 second,
                 join(middle.load_charge, was.load_charge),
@@ -303,7 +309,11 @@ impl Advance {
             ],
             end,
             &guess,
-        )
+        );
+        State {
+            pace: [now.x - was.x, now.y - was.y],
+            ..now
+        }
     }
 
     #[cold]
