@@ -6,5 +6,7 @@ pub mod diode;
 pub mod led;
 pub mod noise;
 pub mod opamp;
+pub mod photocell;
 pub mod photodiode;
+pub mod phototransistor;
 pub mod sunlight;

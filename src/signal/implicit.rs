@@ -1,4 +1,8 @@
-//! One implicit equation at a time: the stiff one-step rule and the safeguarded root finder that the nonlinear nodes share.
+//! The stiff one-step rule and the safeguarded root finders that the nonlinear nodes share.
+
+mod pair;
+
+pub use pair::{Pair, Reach, paired_root};
 
 /// The TR-BDF2 rule (Bank et al. 1985; Hosea and Shampine 1996): a trapezoid to t + γh, then a second-order backward difference
 /// to t + h. L-stable and of second order; its amplitude error on a slope of 6 dB an octave is 0.04 dB at a nineteenth of the sample rate.

@@ -14,4 +14,5 @@ mod properties;
 mod quantity;
 mod randomness;
 mod resampling;
+mod stations;
 mod wav;
