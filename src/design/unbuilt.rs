@@ -4,13 +4,8 @@ use super::error::DesignError;
 use super::section::Section;
 
 /// Kinds, by the section's path without numbers or names.
-const KINDS: [(&str, &str); 16] = [
+const KINDS: [(&str, &str); 11] = [
     ("transmitter.driver", "transistor"),
-    ("path", "fibre"),
-    ("path", "diffuse"),
-    ("ambient", "tube-magnetic"),
-    ("ambient", "tube-electronic"),
-    ("ambient", "pwm-lamp"),
     ("receiver.detector", "phototransistor"),
     ("receiver.detector", "photocell"),
     ("transmitter.stage", "transistor"),
@@ -24,13 +19,9 @@ const KINDS: [(&str, &str); 16] = [
 ];
 
 /// Keys.
-const KEYS: [(&str, &str); 7] = [
+const KEYS: [(&str, &str); 3] = [
     ("transmitter.driver", "servo"),
     ("transmitter.emitter", "curve"),
-    ("path", "turbulence"),
-    ("path", "wind"),
-    ("path", "sway"),
-    ("path", "sway_bandwidth"),
     ("receiver.front_end", "ambient_servo"),
 ];
 

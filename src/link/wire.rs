@@ -6,11 +6,12 @@ use super::Link;
 use crate::design::{Design, DesignError, Section};
 use crate::physics::constants::thermal_voltage;
 use crate::station::Model;
-use crate::station::air::{AirPath, Optics};
 use crate::station::ambient::Lamp;
 use crate::station::coupling::Coupling;
 use crate::station::opamp::OpampStage;
+use crate::station::optics::Optics;
 use crate::station::output::Output;
+use crate::station::path::LightPath;
 use crate::station::receive_head::{Detector, LightAtRest, LoadHead, TransimpedanceHead};
 use crate::station::source::Source;
 use crate::station::transmit_head::TransmitHead;
@@ -42,7 +43,7 @@ pub fn wire(design: &Design) -> Result<Link, DesignError> {
     let wavelength = design.emitter.number("wavelength");
     let detector = Detector::new(&design.detector, wavelength, t, vt);
     let optics = Optics::new(&design.optics, detector.area);
-    let path = AirPath::new(
+    let path = LightPath::new(
         &design.path,
         &design.interruptions,
         &design.emitter,
