@@ -173,8 +173,13 @@ fn conclude(
 
 /// The warning of an emitter that carried more than it may.
 fn overdriven(link: &Link, programme: Option<&Outcome>, test: &[StationEvents]) -> Option<String> {
-    let rendered = programme.iter().flat_map(|p| p.channels.iter().flat_map(|c| &c.events));
-    let peak = rendered.chain(test).filter_map(|e| e.events.peak).reduce(f64::max)?;
+    let rendered = programme
+        .iter()
+        .flat_map(|p| p.channels.iter().flat_map(|c| &c.events));
+    let peak = rendered
+        .chain(test)
+        .filter_map(|e| e.events.peak)
+        .reduce(f64::max)?;
     (peak > link.max_current()).then(|| {
         format!(
             "transmitter.emitter: its current reached {}, above the maximum of {}",

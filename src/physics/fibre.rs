@@ -32,7 +32,8 @@ mod tests {
     use super::*;
 
     fn close(got: f64, table: f64) {
-        assert!((got / table - 1.0).abs() < 2e-6, "{got} {table}");
+        // The table has six digits.
+        assert!((got / table - 1.0).abs() < 5e-6, "{got} {table}");
     }
 
     // Closed forms computed apart from this code.

@@ -146,7 +146,11 @@ mod tests {
     use super::*;
 
     fn rms(series: &Series) -> f64 {
-        let power: f64 = series.lines.iter().map(|l| l.amplitude * l.amplitude / 2.0).sum();
+        let power: f64 = series
+            .lines
+            .iter()
+            .map(|l| l.amplitude * l.amplitude / 2.0)
+            .sum();
         power.sqrt()
     }
 

@@ -135,9 +135,17 @@ mod tests {
             let closed = -(-2.0_f64 * (aperture / radius).powi(2)).exp_m1();
             assert!((table.at(0.0) - closed).abs() < 1e-6, "{}", table.at(0.0));
             for k in 1..40 {
-                let offset = f64::from(k) * 0.13 * radius + if aperture > radius { aperture - 2.5 * radius } else { 0.0 };
+                let offset = f64::from(k) * 0.13 * radius
+                    + if aperture > radius {
+                        aperture - 2.5 * radius
+                    } else {
+                        0.0
+                    };
                 let exact = gaussian_capture(radius, aperture, offset);
-                assert!((table.at(offset) - exact).abs() < 1e-6, "{radius} {aperture} {offset}");
+                assert!(
+                    (table.at(offset) - exact).abs() < 1e-6,
+                    "{radius} {aperture} {offset}"
+                );
             }
         }
     }
@@ -147,7 +155,10 @@ mod tests {
         // A beam far wider than the aperture: the mean irradiance on the axis falls as w²/(w² + 4σ²).
         let (w, stray) = (1.0, 0.3);
         let mean = gaussian_capture(swayed_radius(w, stray), 1e-3, 0.0);
-        assert!((mean / gaussian_capture(w, 1e-3, 0.0) * (1.0 + 4.0 * stray * stray) - 1.0).abs() < 1e-5);
+        assert!(
+            (mean / gaussian_capture(w, 1e-3, 0.0) * (1.0 + 4.0 * stray * stray) - 1.0).abs()
+                < 1e-5
+        );
         // A narrow lobe is Gaussian, cos^m ≈ e^(−mθ²/2): the mean over both axes is 1/(1 + mσ²).
         let (m, sway) = (2000.0, 0.02);
         assert!((lambertian_mean(m, 0.0, sway) * (1.0 + m * sway * sway) - 1.0).abs() < 1e-3);

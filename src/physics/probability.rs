@@ -150,7 +150,9 @@ mod tests {
         // P(1, x) = 1 − e^(−x); P(1/2, x) = erf √x; Q(3, x) = e^(−x)(1 + x + x²/2) (NIST DLMF 8.4).
         for x in [1e-6_f64, 0.3, 1.7, 4.0, 30.0] {
             let (p, q) = incomplete_gamma(1.0, x);
-            assert!((p / -(-x).exp_m1() - 1.0).abs() < 1e-13 && (q / (-x).exp() - 1.0).abs() < 1e-9);
+            assert!(
+                (p / -(-x).exp_m1() - 1.0).abs() < 1e-13 && (q / (-x).exp() - 1.0).abs() < 1e-9
+            );
             let (p, _) = incomplete_gamma(0.5, x);
             assert!((p / libm::erf(x.sqrt()) - 1.0).abs() < 1e-13);
             let (_, q) = incomplete_gamma(3.0, x);

@@ -19,7 +19,11 @@ fn sinc(x: f64) -> f64 {
     }
     // The remainder to an even number keeps the sine exact for large x.
     let turn = x - 2.0 * (x / 2.0).round();
-    let sine = if turn.abs() == 1.0 { 0.0 } else { (PI * turn).sin() };
+    let sine = if turn.abs() == 1.0 {
+        0.0
+    } else {
+        (PI * turn).sin()
+    };
     sine / (PI * x)
 }
 

@@ -32,7 +32,8 @@ mod tests {
     #[test]
     fn irradiance_matches_table() {
         for (reflectance, gain) in [(0.3, 3.89610e-7), (0.6, 1.36364e-6), (0.8, 3.63636e-6)] {
-            assert!((1e-4 * irradiance(110.0, reflectance) / gain - 1.0).abs() < 2e-6);
+            // The table has six digits.
+            assert!((1e-4 * irradiance(110.0, reflectance) / gain - 1.0).abs() < 5e-6);
         }
     }
 

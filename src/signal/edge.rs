@@ -54,7 +54,11 @@ fn windowed_sinc(t: f64) -> f64 {
     if inside <= 0.0 {
         return 0.0;
     }
-    let sinc = if t == 0.0 { 1.0 } else { (PI * t).sin() / (PI * t) };
+    let sinc = if t == 0.0 {
+        1.0
+    } else {
+        (PI * t).sin() / (PI * t)
+    };
     sinc * bessel_i0(BETA * inside.sqrt()) / bessel_i0(BETA)
 }
 
@@ -143,7 +147,11 @@ impl Corner {
         }
         let lacks = look_up(&self.values, &self.slopes, FINE, away * FINE as f64);
         // A step is odd about its middle, a bend's lack even.
-        if !self.bend && after >= 0.0 { -lacks } else { lacks }
+        if !self.bend && after >= 0.0 {
+            -lacks
+        } else {
+            lacks
+        }
     }
 }
 

@@ -3,8 +3,8 @@
 mod flicker;
 mod gaussian;
 
-use rand::rngs::Xoshiro256PlusPlus;
 use rand::SeedableRng;
+use rand::rngs::Xoshiro256PlusPlus;
 
 pub use flicker::FlickerShaper;
 pub use gaussian::Gaussian;

@@ -27,9 +27,15 @@ impl Gaussian {
         let mut seeds = stream(seed, channel, path, cause);
         let mut state = [[0; LANES]; 4];
         for lane in 0..LANES {
-            state.iter_mut().for_each(|word| word[lane] = seeds.next_u64());
+            state
+                .iter_mut()
+                .for_each(|word| word[lane] = seeds.next_u64());
         }
-        Self { state, batch: [0.0; BATCH], used: BATCH }
+        Self {
+            state,
+            batch: [0.0; BATCH],
+            used: BATCH,
+        }
     }
 
     /// The next draw.
@@ -121,13 +127,17 @@ fn one_to_two(bits: u64) -> f64 {
 #[inline(always)]
 fn ln(x: f64) -> f64 {
     // x = m·2^e with m in [√½, √2); the exponent becomes a number by standing in the mantissa of 2^52.
-    let bits = x.to_bits().wrapping_add(0x3ff0_0000_0000_0000 - 0x3fe6_a09e_667f_3bcd);
-    let exponent = f64::from_bits((bits >> 52) | 0x4330_0000_0000_0000) - (4_503_599_627_370_496.0 + 1023.0);
+    let bits = x
+        .to_bits()
+        .wrapping_add(0x3ff0_0000_0000_0000 - 0x3fe6_a09e_667f_3bcd);
+    let exponent =
+        f64::from_bits((bits >> 52) | 0x4330_0000_0000_0000) - (4_503_599_627_370_496.0 + 1023.0);
     let m = f64::from_bits((bits & 0x000f_ffff_ffff_ffff) + 0x3fe6_a09e_667f_3bcd);
     // ln m = 2·artanh t, t = (m − 1)/(m + 1), |t| < 0.172.
     let t = (m - 1.0) / (m + 1.0);
     let u = t * t;
-    let series = 1.0 / 3.0 + u * (1.0 / 5.0 + u * (1.0 / 7.0 + u * (1.0 / 9.0 + u * (1.0 / 11.0 + u * (1.0 / 13.0)))));
+    let series = 1.0 / 3.0
+        + u * (1.0 / 5.0 + u * (1.0 / 7.0 + u * (1.0 / 9.0 + u * (1.0 / 11.0 + u * (1.0 / 13.0)))));
     exponent * std::f64::consts::LN_2 + 2.0 * (t + t * u * series)
 }
 
@@ -137,12 +147,29 @@ fn sin_cos_turn(turn: f64) -> (f64, f64) {
     let x = std::f64::consts::PI * turn;
     let u = x * x;
     let mut sine = -1.0 / 1_307_674_368_000.0;
-    for c in [6_227_020_800.0, -39_916_800.0, 362_880.0, -5_040.0, 120.0, -6.0, 1.0] {
+    for c in [
+        6_227_020_800.0,
+        -39_916_800.0,
+        362_880.0,
+        -5_040.0,
+        120.0,
+        -6.0,
+        1.0,
+    ] {
         sine = sine * u + 1.0 / c;
     }
     sine *= x;
     let mut cosine = 1.0 / 20_922_789_888_000.0;
-    for c in [-87_178_291_200.0, 479_001_600.0, -3_628_800.0, 40_320.0, -720.0, 24.0, -2.0, 1.0] {
+    for c in [
+        -87_178_291_200.0,
+        479_001_600.0,
+        -3_628_800.0,
+        40_320.0,
+        -720.0,
+        24.0,
+        -2.0,
+        1.0,
+    ] {
         cosine = cosine * u + 1.0 / c;
     }
     (2.0 * sine * cosine, cosine * cosine - sine * sine)

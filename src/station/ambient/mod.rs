@@ -137,7 +137,8 @@ impl Lamp {
         let mains = section.number("mains");
         let low = fluorescent::low();
         let high = ballast.map(|frequency| (fluorescent::high(), frequency));
-        let both = |extreme: fn(&Series) -> f64| extreme(low) + high.map_or(0.0, |(s, _)| extreme(s));
+        let both =
+            |extreme: fn(&Series) -> f64| extreme(low) + high.map_or(0.0, |(s, _)| extreme(s));
         let scale = fluorescent::scale_to_depth(
             both(|s| s.highest),
             both(|s| s.lowest),
@@ -209,7 +210,11 @@ impl Lamp {
 
     /// Name of its flicker among the noise contributors.
     pub fn hum_name(&self) -> String {
-        let cause = if self.pulses.is_some() { "pulses" } else { "hum" };
+        let cause = if self.pulses.is_some() {
+            "pulses"
+        } else {
+            "hum"
+        };
         format!("{}.{cause}", self.path)
     }
 

@@ -18,9 +18,8 @@ pub struct Fades {
 impl Fades {
     /// The fades in time, `None` where nothing moves in this run.
     pub fn in_time(&self, conditions: &Conditions) -> Option<Fading> {
-        let moves = !self.interruptions.is_empty()
-            || self.scintillation.is_some()
-            || self.sway.is_some();
+        let moves =
+            !self.interruptions.is_empty() || self.scintillation.is_some() || self.sway.is_some();
         (conditions.fades && moves).then(|| Fading {
             cuts: self
                 .interruptions

@@ -32,10 +32,10 @@ pub fn lay(path: &mut LightPath, section: &Section, emitter: &Section, optics: &
     let loss = |share: f64| -10.0 * share.log10();
     path.add_reading("launch loss", loss(launch), Dimension::Decibel);
     path.add_reading("loss at both faces", loss(faces), Dimension::Decibel);
+    path.add_reading("attenuation and connectors", decibels, Dimension::Decibel);
     path.add_reading(
-        "attenuation and connectors",
-        decibels,
+        "loss at the detector",
+        loss(covered * seen),
         Dimension::Decibel,
     );
-    path.add_reading("loss at the detector", loss(covered * seen), Dimension::Decibel);
 }

@@ -118,7 +118,11 @@ impl Sway {
 
     /// dB, positive for a loss.
     fn mean_loss(&self) -> f64 {
-        -10.0 * self.capture.mean_loss(self.off_axis, self.deviation).log10()
+        -10.0
+            * self
+                .capture
+                .mean_loss(self.off_axis, self.deviation)
+                .log10()
     }
 
     /// What it does to the light.
@@ -184,8 +188,8 @@ impl Axes {
         let across = deviation * self.across.draw();
         // The axis turned in two planes: its cosine to the line of sight is the product.
         let cosine = along.cos() * across.cos();
-        let ahead = along.abs() < std::f64::consts::FRAC_PI_2
-            && across.abs() < std::f64::consts::FRAC_PI_2;
+        let ahead =
+            along.abs() < std::f64::consts::FRAC_PI_2 && across.abs() < std::f64::consts::FRAC_PI_2;
         if ahead {
             self.sway.capture.at(cosine) / still
         } else {
