@@ -101,6 +101,15 @@ pub fn wire(design: &Design) -> Result<Link, DesignError> {
         link.warnings
             .push("no light arrives at the detector: the output holds noise alone".into());
     }
+    if design.path.kind.as_deref() == Some("fibre") {
+        let outside = design.ambient.iter().filter(|a| !a.given("photocurrent"));
+        link.warnings.extend(outside.map(|a| {
+            format!(
+                "{}: it falls on the detector as if there were no fibre before it; a closed connector would keep it out",
+                a.path
+            )
+        }));
+    }
     link.warnings.extend(unknown_silence(&link));
     Ok(link)
 }

@@ -99,7 +99,7 @@ impl Glide {
     #[inline]
     pub fn step(&mut self, mut next: impl FnMut() -> f64) -> f64 {
         let place = self.knots_a_sample * self.sample as f64;
-        while self.passed + 1 <= place as u64 {
+        while self.passed < place as u64 {
             self.passed += 1;
             self.knots.rotate_left(1);
             self.knots[3] = next();
@@ -115,6 +115,29 @@ impl Glide {
 #[cfg(test)]
 mod tests {
     use super::*;
+
+    #[test]
+    fn its_density_is_the_law_s() {
+        for (order, decibels) in [(4.0_f64 / 3.0, 0.3_f64), (2.0, 0.3)] {
+            let wander = Wander::new(order, 1.0, KNOTS, Gaussian::new(1, 0, "a", "b"));
+            let density = |f: f64| {
+                let at =
+                    |k: usize| num_complex::Complex64::from_polar(1.0, -TAU * f * k as f64 / KNOTS);
+                let sum: num_complex::Complex64 = wander
+                    .weights
+                    .iter()
+                    .enumerate()
+                    .map(|(k, w)| *w * at(k))
+                    .sum();
+                sum.norm_sqr()
+            };
+            for f in [0.1_f64, 0.5, 1.0, 2.0, 4.0] {
+                let law = (1.0 + f * f).powf(-order);
+                let db = 10.0 * (density(f) / density(1e-6) / law).log10();
+                assert!(db.abs() < decibels, "{order} {f}: {db}");
+            }
+        }
+    }
 
     #[test]
     fn a_corner_of_nought_stands_still() {

@@ -131,7 +131,7 @@ impl Lamp {
     /// `ballast` (Hz), the part that follows the ballast.
     ///
     /// One factor scales all lines, so that the whole light has the modulation depth `ripple` and keeps its shape; the two parts drift through each
-    /// other, so that their extremes add. Unscaled the depth is 12.8 % on a magnetic ballast and 58 % on an electronic one. At `phase` 0 each
+    /// other, so that their extremes add. Unscaled the depth is 12.8 % on a magnetic ballast and 73 % on an electronic one. At `phase` 0 each
     /// part starts where it rises through its mean; the mains' phase moves the first part as a whole, the ballast runs free.
     fn light_tube(&mut self, section: &Section, ballast: Option<f64>) {
         let mains = section.number("mains");

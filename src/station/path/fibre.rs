@@ -29,7 +29,8 @@ pub fn lay(path: &mut LightPath, section: &Section, emitter: &Section, optics: &
     let seen = (optics.field_of_view.sin() / aperture).powi(2).min(1.0);
     path.gain = launch * faces * way * covered * seen;
 
-    let loss = |share: f64| -10.0 * share.log10();
+    // The sum with 0 shows no loss as 0, not as −0.
+    let loss = |share: f64| 0.0 - 10.0 * share.log10();
     path.add_reading("launch loss", loss(launch), Dimension::Decibel);
     path.add_reading("loss at both faces", loss(faces), Dimension::Decibel);
     path.add_reading("attenuation and connectors", decibels, Dimension::Decibel);

@@ -97,7 +97,8 @@ fn an_electronic_ballast_adds_its_lines_and_none_folds() {
     let x = flicker(&link, 384e3, 384_000);
     let spectrum = Analyser::new(384e3, 384_000, 20.0).analyse(&x);
     let above: f64 = spectrum.band_power_without(2100.0, 190e3, &[37.5e3, 75e3, 150e3]);
-    assert!(above.sqrt() < 1e-9, "{above:e}");
+    // What the table's cubic leaves is 177 dB under the mean.
+    assert!(above.sqrt() < 3e-9, "{above:e}");
     // All of them count on paper: 40 and 12.
     assert_eq!(link.lamps()[0].lines().count(), 52);
 }
@@ -130,7 +131,7 @@ fn check_pulses(rate: f64, frequency: f64, duty: f64, edge: f64, phase: f64) {
     let rest = spectrum
         .band_power_without(20.0, 0.25 * rate, &lines)
         .sqrt();
-    assert!(rest < 1e-5, "{keys} aliases {:.1} dB", 20.0 * rest.log10());
+    assert!(rest < 1e-6, "{keys} aliases {:.1} dB", 20.0 * rest.log10());
     let paper = link.lamps()[0].lines().take(lines.len());
     for ((f, amplitude), line) in paper.zip(&lines) {
         assert!((f / line - 1.0).abs() < 1e-12);
@@ -166,13 +167,13 @@ fn a_pulse_is_mean_over_duty_high_and_dark_between() {
     let keys = "kind = \"pwm-lamp\"\nfrequency = \"200 Hz\"\nduty = 0.2\nedge = \"20 µs\"\n";
     let x = flicker(&with_lamp(keys), 384e3, 1920 * 3);
     // From the first rise 384 samples of light at five times the mean, then dark; away from the corners' ringing.
-    for n in 0..1920 * 3 {
+    for (n, value) in x.iter().enumerate() {
         let place = n % 1920;
         if (24..360).contains(&place) {
-            assert!((x[n] - 4.0).abs() < 1e-3, "{n}: {}", x[n]);
+            assert!((value - 4.0).abs() < 1e-3, "{n}: {value}");
         }
         if (410..1890).contains(&place) {
-            assert!((x[n] + 1.0).abs() < 1e-3, "{n}: {}", x[n]);
+            assert!((value + 1.0).abs() < 1e-3, "{n}: {value}");
         }
     }
     // It starts on its way up, at its mean.
