@@ -32,7 +32,7 @@ const STRONG: &str = "distance = \"1 km\"\nturbulence = \"1e-13 m^-2/3\"\nwind =
 #[test]
 fn irradiance_has_the_law_s_mean_variance_and_fades() {
     for (keys, structure, distance) in [(WEAK, 2e-14, 500.0), (STRONG, 1e-13, 1000.0)] {
-        // 1 mm² so small that nothing is averaged out.
+        // A detector so small that nothing is averaged out.
         let link = air(keys, &["receiver.detector.area=0.01 mm²"]);
         let path = path_of(&link);
         assert!((reading(path, "scintillation corner") / 10.0 - 1.0).abs() < 1e-4);
