@@ -4,13 +4,8 @@ use super::error::DesignError;
 use super::section::Section;
 
 /// Kinds, by the section's path without numbers or names.
-const KINDS: [(&str, &str); 14] = [
+const KINDS: [(&str, &str); 9] = [
     ("transmitter.driver", "transistor"),
-    ("path", "fibre"),
-    ("path", "diffuse"),
-    ("ambient", "tube-magnetic"),
-    ("ambient", "tube-electronic"),
-    ("ambient", "pwm-lamp"),
     ("transmitter.stage", "transistor"),
     ("transmitter.stage", "filter"),
     ("transmitter.stage", "power"),
@@ -22,13 +17,9 @@ const KINDS: [(&str, &str); 14] = [
 ];
 
 /// Keys.
-const KEYS: [(&str, &str); 7] = [
+const KEYS: [(&str, &str); 3] = [
     ("transmitter.driver", "servo"),
     ("transmitter.emitter", "curve"),
-    ("path", "turbulence"),
-    ("path", "wind"),
-    ("path", "sway"),
-    ("path", "sway_bandwidth"),
     ("receiver.front_end", "ambient_servo"),
 ];
 

@@ -100,7 +100,7 @@ impl Link {
             curves: Curves::Bent,
             noise: true,
             lamps: true,
-            interruptions: true,
+            fades: true,
             seed,
             channel: 0,
             cold: false,

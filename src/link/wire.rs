@@ -5,11 +5,12 @@ use std::collections::BTreeSet;
 use super::Link;
 use crate::design::{Design, DesignError, Section};
 use crate::station::Model;
-use crate::station::air::{AirPath, Optics};
 use crate::station::ambient::Lamp;
 use crate::station::coupling::Coupling;
 use crate::station::opamp::OpampStage;
+use crate::station::optics::Optics;
 use crate::station::output::Output;
+use crate::station::path::LightPath;
 use crate::station::receive_head::{LightAtRest, Sensitivity, receive_head};
 use crate::station::source::Source;
 use crate::station::transmit_head::TransmitHead;
@@ -41,7 +42,7 @@ pub fn wire(design: &Design) -> Result<Link, DesignError> {
     let sensitivity = Sensitivity::new(&design.detector, wavelength);
     let responsivity = sensitivity.responsivity;
     let optics = Optics::new(&design.optics, sensitivity.area);
-    let path = AirPath::new(
+    let path = LightPath::new(
         &design.path,
         &design.interruptions,
         &design.emitter,
@@ -98,6 +99,15 @@ pub fn wire(design: &Design) -> Result<Link, DesignError> {
     if received <= 0.0 {
         link.warnings
             .push("no light arrives at the detector: the output holds noise alone".into());
+    }
+    if design.path.kind.as_deref() == Some("fibre") {
+        let outside = design.ambient.iter().filter(|a| !a.given("photocurrent"));
+        link.warnings.extend(outside.map(|a| {
+            format!(
+                "{}: it falls on the detector as if there were no fibre before it; a closed connector would keep it out",
+                a.path
+            )
+        }));
     }
     link.warnings.extend(unknown_silence(&link));
     Ok(link)

@@ -3,10 +3,17 @@
 pub mod air;
 pub mod constants;
 pub mod diode;
+pub mod fibre;
+pub mod fluorescent;
 pub mod led;
 pub mod noise;
 pub mod opamp;
 pub mod photocell;
 pub mod photodiode;
 pub mod phototransistor;
+pub mod pointing;
+pub mod probability;
+pub mod pulse_light;
+pub mod room;
 pub mod sunlight;
+pub mod turbulence;

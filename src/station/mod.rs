@@ -1,12 +1,13 @@
 //! The stations of the light's way and the electrical stages. Each has two faces over the same laws of `physics`: a [`Model`]
 //! on paper and a [`Runner`] in time. Signals between stations are deviations from rest, in volts or watts.
 
-pub mod air;
 pub mod ambient;
 pub mod coupling;
 pub mod noise;
 pub mod opamp;
+pub mod optics;
 pub mod output;
+pub mod path;
 pub mod receive_head;
 pub mod source;
 pub mod transmit_head;
@@ -39,8 +40,8 @@ pub struct Conditions {
     pub lamps: bool,
     pub seed: u64,
     pub channel: usize,
-    /// Whether the path's interruptions happen.
-    pub interruptions: bool,
+    /// Whether the light fades on its way: interruptions, scintillation, sway.
+    pub fades: bool,
     /// Whether the run starts with discharged capacitors and a cold emitter.
     pub cold: bool,
     /// Names of noise contributors that stay silent.

@@ -32,7 +32,7 @@ pub fn quiet(rate: f64) -> Conditions {
         lamps: false,
         seed: 1,
         channel: 0,
-        interruptions: false,
+        fades: false,
         cold: false,
         silence: Vec::new(),
     }

@@ -106,8 +106,6 @@ const FAULTS: &[Fault] = &[
     fault("\"0.65 A/W\"]", "\"0.45 A/W\"]", "[\"0.5 A/W\", \"0.45 A/W\"]", "down to", "smaller value first"),
     // Not built.
     fault("sense = \"10 Ω\"", "sense = \"10 Ω\"\nservo = { bandwidth = \"10 kHz\", gain = 10 }", "servo = { bandwidth = \"10 kHz\", gain = 10 }", "transmitter.driver.servo is not built yet", ""),
-    fault("off_axis = \"3°\"", "turbulence = \"1e-14 m^-2/3\"\nwind = \"2 m/s\"", "turbulence = \"1e-14 m^-2/3\"", "path.turbulence is not built yet", ""),
-    fault("kind = \"incandescent\"", "kind = \"tube-magnetic\"", "kind = \"tube-magnetic\"", "kind tube-magnetic is not built yet", ""),
 ];
 
 #[test]

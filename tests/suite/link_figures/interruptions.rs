@@ -5,7 +5,7 @@ use harklight::station::Conditions;
 
 fn with_interruptions(rate: f64, seed: u64) -> Conditions {
     Conditions {
-        interruptions: true,
+        fades: true,
         seed,
         ..quiet(rate)
     }

@@ -1,5 +1,8 @@
 //! Stations against things outside the project, and their two faces against each other.
 
 mod bench;
+mod lamps;
+mod light_path;
+mod moving_path;
 mod photocell;
 mod phototransistor;
