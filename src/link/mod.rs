@@ -101,6 +101,7 @@ impl Link {
             noise: true,
             lamps: true,
             fades: true,
+            start: 0.0,
             seed,
             channel: 0,
             cold: false,

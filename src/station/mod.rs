@@ -42,6 +42,8 @@ pub struct Conditions {
     pub channel: usize,
     /// Whether the light fades on its way: interruptions, scintillation, sway.
     pub fades: bool,
+    /// Time of the first sample, s: below 0 where a run leads in before its programme.
+    pub start: f64,
     /// Whether the run starts with discharged capacitors and a cold emitter.
     pub cold: bool,
     /// Names of noise contributors that stay silent.

@@ -29,6 +29,7 @@ impl Fades {
             scintillation: self.scintillation.as_ref().map(|s| s.in_time(conditions)),
             sway: self.sway.as_ref().map(|s| s.in_time(conditions)),
             rate: conditions.rate,
+            start: conditions.start,
             sample: 0,
             begun: 0,
         })
@@ -41,6 +42,7 @@ pub struct Fading {
     scintillation: Option<Scintillating>,
     sway: Option<Swaying>,
     rate: f64,
+    start: f64,
     sample: u64,
     begun: u64,
 }
@@ -57,7 +59,7 @@ impl Fading {
         }
         for cut in &mut self.cuts {
             for (share, sample) in shares.iter_mut().zip(self.sample..) {
-                let (open, begins) = cut.passes(sample as f64 / self.rate);
+                let (open, begins) = cut.passes(self.start + sample as f64 / self.rate);
                 *share *= open;
                 self.begun += u64::from(begins);
             }

@@ -40,12 +40,11 @@ impl Scintillation {
         }
         let diameter = law::disc_diameter(area);
         let averaging = law::aperture_averaging(diameter, wavelength, distance);
-        let (large, small) = law::log_variances(rytov);
         Some(Self {
             path: section.path.clone(),
             irradiance: Arc::new(Irradiance::new(rytov, averaging)),
             rytov,
-            index: averaging * (large + small).exp_m1(),
+            index: averaging * law::scintillation_index(rytov),
             corner: law::fade_rate(section.number("wind"), wavelength, distance),
         })
     }

@@ -109,6 +109,7 @@ pub fn quiet(rate: f64) -> Conditions {
         seed: 1,
         channel: 0,
         fades: false,
+        start: 0.0,
         cold: false,
         silence: Vec::new(),
     }
