@@ -71,7 +71,7 @@ impl LightPath {
         path.readings.splice(
             0..0,
             [
-                ("share of the flux", gain, Dimension::Share),
+                ("share of the flux", 10.0 * gain.log10(), Dimension::Decibel),
                 ("on the detector", received, Dimension::Watt),
             ]
             .map(|(name, value, dimension)| Reading {

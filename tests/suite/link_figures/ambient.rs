@@ -41,7 +41,7 @@ fn irradiance_becomes_current_through_the_optics() {
             "receiver.optics.filter={ centre = \"940 nm\", width = \"50 nm\", transmission = 0.5 }",
         )
         .link();
-    let current = reading(station(&link, HEAD), "photocurrent, ambient");
+    let current = reading(station(&link, HEAD), "ambient photocurrent");
     assert!((current - 20e-6 * 4.0 * 0.5).abs() < 1e-18);
 }
 

@@ -186,8 +186,8 @@ impl Model for PhotocellHead {
             dimension: Dimension::Volt,
         };
         vec![
-            ampere("photocurrent, signal", self.light.signal),
-            ampere("photocurrent, ambient", self.light.ambient),
+            ampere("signal photocurrent", self.light.signal),
+            ampere("ambient photocurrent", self.light.ambient),
             ampere("current into the load", self.lead_current()),
             volt("output", self.rest),
             volt(

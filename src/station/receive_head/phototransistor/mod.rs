@@ -255,8 +255,8 @@ impl Model for PhototransistorHead {
             dimension: Dimension::Volt,
         };
         vec![
-            ampere("photocurrent, signal", self.light.signal),
-            ampere("photocurrent, ambient", self.light.ambient),
+            ampere("signal photocurrent", self.light.signal),
+            ampere("ambient photocurrent", self.light.ambient),
             ampere("collector current", self.lead_current()),
             Reading {
                 name: "current gain",
