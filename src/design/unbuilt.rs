@@ -4,8 +4,7 @@ use super::error::DesignError;
 use super::section::Section;
 
 /// Kinds, by the section's path without numbers or names.
-const KINDS: [(&str, &str); 16] = [
-    ("transmitter.driver", "transistor"),
+const KINDS: [(&str, &str); 13] = [
     ("path", "fibre"),
     ("path", "diffuse"),
     ("ambient", "tube-magnetic"),
@@ -13,10 +12,8 @@ const KINDS: [(&str, &str); 16] = [
     ("ambient", "pwm-lamp"),
     ("receiver.detector", "phototransistor"),
     ("receiver.detector", "photocell"),
-    ("transmitter.stage", "transistor"),
     ("transmitter.stage", "filter"),
     ("transmitter.stage", "power"),
-    ("receiver.stage", "transistor"),
     ("receiver.stage", "filter"),
     ("receiver.stage", "power"),
     ("output", "loudspeaker"),

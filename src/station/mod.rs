@@ -9,6 +9,7 @@ pub mod opamp;
 pub mod output;
 pub mod receive_head;
 pub mod source;
+pub mod transistor;
 pub mod transmit_head;
 pub mod trim;
 pub mod wiring;

@@ -1,0 +1,300 @@
+//! The bipolar transistor with its emitter resistor, between a source at its base and a load at its collector.
+
+use num_complex::Complex64;
+
+/// Logarithm of the junction's drive beyond which nothing physical happens any more; keeps the powers of it finite.
+const HIGHEST: f64 = 230.0;
+/// Longest step that the search from the last state takes in the logarithm of the drive.
+const LONGEST: f64 = 0.25;
+
+/// A common emitter around its rest. Every variable is a deviation from rest, except the drive `j` = exp(ΔV_BE/V_T), 1 at rest.
+///
+/// The law is Ebers and Moll's in the forward region with Early's factor (Gray and Meyer, the large-signal model):
+///
+/// - I_B = I_B0·j, I_C = I·j·(1 + ΔV_CE/(V_A + V_CE0)): the current gain is that at rest, and the base current does not feel V_CE;
+/// - base loop: v = ΔI_B·R_B + V_T·ln j + ΔI_E·R_E;
+/// - collector: Δv_C = k − z·ΔI_C, V_CE counted from the emitter.
+///
+/// Saturation is hard: V_CE never falls below its least value; what the collector then cannot take the base carries. Cut-off is
+/// the exponential itself. Left out: junction leakage, breakdown, high-level injection, the charge of a saturated base.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct CommonEmitter {
+    /// kT/q, V.
+    pub thermal_voltage: f64,
+    /// Resistance of the base loop: source, divider and base region, Ω (≥ 0).
+    pub base_resistance: f64,
+    /// Emitter resistance that signals see, Ω (≥ 0).
+    pub emitter_resistance: f64,
+    /// Base current at rest, A (> 0).
+    pub base_rest: f64,
+    /// Collector current that the drive asks for at rest, A (> 0).
+    pub asked: f64,
+    /// Collector current at rest, A: `asked`, or less where the rest is saturated.
+    pub collector_rest: f64,
+    /// 1/(V_A + V_CE0), 1/V (≥ 0).
+    pub early: f64,
+    /// How far V_CE may fall from rest, V (≥ 0, may be infinite); 0 where the rest is saturated.
+    pub room: f64,
+}
+
+/// Where the collector stands.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Region {
+    Active,
+    /// V_CE at its least.
+    Saturated,
+    /// The collector feeds on the base: it has been pulled below its least voltage.
+    Reversed,
+}
+
+/// A solved state, and the start of the next search.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct State {
+    /// ln j.
+    pub log_drive: f64,
+    /// j, the exponential of it.
+    pub drive: f64,
+    /// Collector current away from rest, A.
+    pub collector: f64,
+    pub region: Region,
+}
+
+impl State {
+    /// At rest.
+    pub const REST: Self = Self {
+        log_drive: 0.0,
+        drive: 1.0,
+        collector: 0.0,
+        region: Region::Active,
+    };
+}
+
+impl CommonEmitter {
+    /// Collector current away from rest at the drive `j`, its slope against `j`, and the region, under Δv_C = k − z·ΔI_C.
+    #[inline]
+    fn collector(&self, j: f64, k: f64, z: f64) -> (f64, f64, Region) {
+        let Self {
+            emitter_resistance: re,
+            base_rest: ib,
+            asked,
+            collector_rest: ic,
+            early,
+            ..
+        } = *self;
+        // ΔV_CE = k − z·ΔI_C − R_E·(ΔI_B + ΔI_C) put into the law is linear in I_C.
+        let across = z + re;
+        let base = ib * (j - 1.0);
+        let scale = 1.0 / (1.0 + asked * j * early * across);
+        let factor = 1.0 + early * (k + across * ic - re * base);
+        let active = asked * j * factor * scale;
+        let slope =
+            (asked * (factor - j * early * re * ib) - active * asked * early * across) * scale;
+        let current = active - ic;
+        let limit = k + self.room - re * base;
+        if current * across <= limit && active >= -ib * j {
+            return (current, slope, Region::Active);
+        }
+        let (limited, least) = (limit / across, -ic - ib * j);
+        if limited > least {
+            (limited, -re * ib / across, Region::Saturated)
+        } else {
+            (least, -ib, Region::Reversed)
+        }
+    }
+
+    /// What the base loop needs beyond `v` at ln j = `w`, V, and its slope against w, V.
+    #[inline]
+    fn excess(&self, w: f64, j: f64, v: f64, k: f64, z: f64) -> (f64, f64) {
+        let (current, slope, _) = self.collector(j, k, z);
+        let both = self.base_resistance + self.emitter_resistance;
+        let value = self.thermal_voltage * w
+            + both * self.base_rest * (j - 1.0)
+            + self.emitter_resistance * current
+            - v;
+        let steep =
+            self.thermal_voltage + j * (both * self.base_rest + self.emitter_resistance * slope);
+        (value, steep)
+    }
+
+    /// The state under the base voltage `v` (V) with Δv_C = `k` − `z`·ΔI_C (V, Ω; `z` > 0), searched from `near`.
+    ///
+    /// Newton's method in ln j, with the exponential carried along by its series: a signal that moves little between samples
+    /// costs no library function. Where that does not settle, closed forms start it anew. Good to 1e-13 of V_T.
+    #[inline]
+    pub fn solve(&self, v: f64, k: f64, z: f64, near: &State) -> State {
+        let (mut w, mut j) = (near.log_drive, near.drive);
+        for _ in 0..5 {
+            let (value, steep) = self.excess(w, j, v, k, z);
+            let step = value / steep;
+            if step.is_nan() || step.abs() > LONGEST {
+                break;
+            }
+            w -= step;
+            j *= exp_near(-step);
+            // The next step would be less than the square of this one.
+            if step.abs() < 1e-7 {
+                return self.state(w, j, k, z);
+            }
+        }
+        self.solve_from_anywhere(v, k, z)
+    }
+
+    fn state(&self, log_drive: f64, drive: f64, k: f64, z: f64) -> State {
+        let (collector, _, region) = self.collector(drive, k, z);
+        State {
+            log_drive,
+            drive,
+            collector,
+            region,
+        }
+    }
+
+    /// As [`Self::solve`], without a start.
+    #[cold]
+    fn solve_from_anywhere(&self, v: f64, k: f64, z: f64) -> State {
+        let Self {
+            thermal_voltage: vt,
+            base_resistance: rb,
+            emitter_resistance: re,
+            base_rest: ib,
+            asked,
+            collector_rest: ic,
+            ..
+        } = *self;
+        // Without the Early effect each region is a loop vt·w + a·(e^w − 1) = drive, and the least or largest root is the one.
+        let active = junction_loop(vt, ib * (rb + re) + asked * re, v + re * (ic - asked));
+        let saturated = if self.room.is_finite() {
+            let share = re / (z + re);
+            let a = ib * (rb + re * (1.0 - share));
+            junction_loop(vt, a, v - share * (k + self.room))
+        } else {
+            f64::NEG_INFINITY
+        };
+        let reversed = junction_loop(vt, ib * rb, v + re * (ic + ib));
+        let mut w = active.max(saturated).min(reversed).min(HIGHEST);
+        let (mut low, mut high) = (f64::NEG_INFINITY, f64::INFINITY);
+        for _ in 0..200 {
+            let (value, steep) = self.excess(w, w.exp(), v, k, z);
+            if value > 0.0 {
+                high = w;
+            } else {
+                low = w;
+            }
+            // The Early effect moves the root by a few units at most.
+            let step = (value / steep).clamp(-2.0, 2.0);
+            let mut next = (w - step).min(HIGHEST);
+            if next <= low || next >= high {
+                next = low + (high - low) / 2.0;
+            }
+            let settled = (next - w).abs() <= 1e-15 * w.abs().max(1.0);
+            w = next;
+            if settled || !next.is_finite() {
+                break;
+            }
+        }
+        self.state(w, w.exp(), k, z)
+    }
+
+    /// Tangent at rest: ΔI_C = p·v + q·k under Δv_C = k − `z`·ΔI_C; p in S, q in S.
+    pub fn tangent(&self, z: Complex64) -> (Complex64, Complex64) {
+        let re = self.emitter_resistance;
+        let base_loop = self.base_resistance + self.thermal_voltage / self.base_rest + re;
+        if self.room == 0.0 {
+            // V_CE stands still.
+            let across = z + re - re * re / base_loop;
+            return (-re / base_loop / across, 1.0 / across);
+        }
+        let conductance = self.output_conductance();
+        let gain = self.asked / self.base_rest - conductance * re;
+        let whole = 1.0 + conductance * (re + z) + gain * re / base_loop;
+        (gain / base_loop / whole, conductance / whole)
+    }
+
+    /// Conductance of the transistor alone between collector and emitter, I_C0/(V_A + V_CE0), S.
+    pub fn output_conductance(&self) -> f64 {
+        self.collector_rest * self.early
+    }
+
+    /// Transconductance I_C/V_T at the asked current, S.
+    pub fn transconductance(&self) -> f64 {
+        self.asked / self.thermal_voltage
+    }
+
+    /// Resistance seen into the collector with the base loop closed, Ω; may be infinite.
+    pub fn collector_resistance(&self) -> f64 {
+        let re = self.emitter_resistance;
+        if self.room == 0.0 {
+            let base_loop = self.base_resistance + self.thermal_voltage / self.base_rest + re;
+            return re - re * re / base_loop;
+        }
+        // With z = 0 the collector is held: ΔI_C = q·k.
+        1.0 / self.tangent(Complex64::ZERO).1.re
+    }
+
+    /// What a current from collector to emitter is worth at the collector node, with the base loop closed.
+    pub fn collector_noise_gain(&self) -> f64 {
+        if self.room == 0.0 {
+            // The least voltage holds the collector.
+            return 0.0;
+        }
+        let re = self.emitter_resistance;
+        let base_loop = self.base_resistance + self.thermal_voltage / self.base_rest + re;
+        let conductance = self.output_conductance();
+        let gain = self.asked / self.base_rest - conductance * re;
+        1.0 / (1.0 + conductance * re + gain * re / base_loop)
+    }
+
+    /// Base-loop volts that do as much to the collector's current as an ampere from collector to emitter, Ω.
+    pub fn collector_noise_voltage(&self) -> f64 {
+        let re = self.emitter_resistance;
+        let base_loop = self.base_resistance + self.thermal_voltage / self.base_rest + re;
+        base_loop / (self.asked / self.base_rest - self.output_conductance() * re)
+    }
+
+    /// Resistance of the base loop besides `base_resistance`: r_π + (β + 1)·R_E, Ω.
+    pub fn junction_resistance(&self) -> f64 {
+        self.thermal_voltage / self.base_rest
+            + (self.asked / self.base_rest + 1.0) * self.emitter_resistance
+    }
+}
+
+/// Root of `vt`·w + `a`·(e^w − 1) = `drive` (V): Newton's method from above, as the left side is convex.
+fn junction_loop(vt: f64, a: f64, drive: f64) -> f64 {
+    let target = drive / vt;
+    let a = a / vt;
+    if a <= 0.0 || target < -HIGHEST {
+        return target + a.max(0.0);
+    }
+    let mut w = if target > 0.0 {
+        target.min((1.0 + target / a).ln())
+    } else {
+        // e^w > 0 leaves at most this.
+        target + a
+    };
+    w = w.min(HIGHEST * 3.0);
+    for _ in 0..100 {
+        let e = w.exp();
+        let step = (w + a * (e - 1.0) - target) / (1.0 + a * e);
+        w -= step;
+        if step.abs() <= 1e-9 * w.abs().max(1.0) {
+            break;
+        }
+    }
+    w
+}
+
+/// e^x for |x| < 0.25, by its series to the last place.
+#[inline]
+fn exp_near(x: f64) -> f64 {
+    // Small steps need few terms: x⁵/120 < 1e-17 below 1e-3.
+    if x.abs() < 1e-3 {
+        return 1.0 + x * (1.0 + x * (0.5 + x * (1.0 / 6.0 + x * (1.0 / 24.0 + x / 120.0))));
+    }
+    let mut sum = 1.0;
+    let mut k = 13.0;
+    while k > 0.0 {
+        sum = 1.0 + x / k * sum;
+        k -= 1.0;
+    }
+    sum
+}
