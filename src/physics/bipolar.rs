@@ -210,6 +210,13 @@ impl CommonEmitter {
         (gain / base_loop / whole, conductance / whole)
     }
 
+    /// Tangent at rest of the base current against the loop's voltage, S, with the collector's load `z` (Ω).
+    pub fn base_tangent(&self, z: f64) -> f64 {
+        let re = self.emitter_resistance;
+        let base_loop = self.base_resistance + self.thermal_voltage / self.base_rest + re;
+        (1.0 - re * self.tangent(z.into()).0.re) / base_loop
+    }
+
     /// Conductance of the transistor alone between collector and emitter, I_C0/(V_A + V_CE0), S.
     pub fn output_conductance(&self) -> f64 {
         self.collector_rest * self.early
@@ -297,4 +304,145 @@ fn exp_near(x: f64) -> f64 {
         k -= 1.0;
     }
     sum
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    fn stage(base: f64, emitter: f64, early: f64) -> CommonEmitter {
+        CommonEmitter {
+            thermal_voltage: 0.025,
+            base_resistance: base,
+            emitter_resistance: emitter,
+            base_rest: 5e-6,
+            asked: 1e-3,
+            collector_rest: 1e-3,
+            early,
+            room: 4.0,
+        }
+    }
+
+    fn some() -> Vec<CommonEmitter> {
+        let mut all = Vec::new();
+        for base in [0.0, 200.0, 50e3, 1e7] {
+            for emitter in [0.0, 10.0, 1e3] {
+                for early in [0.0, 0.01, 0.3] {
+                    all.push(stage(base, emitter, early));
+                }
+            }
+        }
+        all.push(CommonEmitter {
+            collector_rest: 0.4e-3,
+            room: 0.0,
+            ..stage(1e3, 100.0, 0.02)
+        });
+        all
+    }
+
+    #[test]
+    fn a_stiff_base_gives_the_plain_exponential() {
+        let law = CommonEmitter {
+            room: f64::INFINITY,
+            ..stage(0.0, 0.0, 0.0)
+        };
+        for v in [-0.4f64, -0.05, -1e-9, 1e-9, 0.03, 0.3] {
+            let i = law.solve(v, 0.0, 1e3, &State::REST).collector;
+            let expected = 1e-3 * (v / 0.025).exp_m1();
+            assert!((i / expected - 1.0).abs() < 1e-6, "{v}: {i} {expected}");
+            assert!((i - expected).abs() < 1e-12 * (1e-3 + expected.abs()));
+        }
+    }
+
+    /// The solution put back into the three equations as they stand, whatever the region.
+    #[test]
+    fn solutions_satisfy_the_circuit() {
+        for law in some() {
+            for z in [10.0, 5e3, 1e6] {
+                for k in [0.0, 1.0, -2.0, 60.0, -60.0] {
+                    let mut near = State::REST;
+                    for v in [0.0, 1e-6, 0.01, -0.02, 0.3, -5.0, 7.0, 200.0, -1e6, 1e6] {
+                        let s = law.solve(v, k, z, &near);
+                        let fresh = law.solve_from_anywhere(v, k, z);
+                        let close = |a: f64, b: f64| (a - b).abs() < 1e-9 * (1e-3 + b.abs());
+                        assert!(close(s.collector, fresh.collector), "{law:?} {z} {k} {v}");
+                        near = s;
+                        if s.log_drive >= HIGHEST {
+                            continue;
+                        }
+                        let base = law.base_rest * (s.drive - 1.0);
+                        let emitter = base + s.collector;
+                        let around = law.base_resistance * base
+                            + law.thermal_voltage * s.log_drive
+                            + law.emitter_resistance * emitter;
+                        assert!(
+                            (around - v).abs() < 1e-11 * (1.0 + v.abs()),
+                            "{law:?} {z} {k} {v}: {around}"
+                        );
+                        let across = k - z * s.collector - law.emitter_resistance * emitter;
+                        let collector = law.collector_rest + s.collector;
+                        let free = law.asked * s.drive * (1.0 + law.early * across);
+                        let size = 1e-12 + 1e-9 * (free.abs() + collector.abs());
+                        match s.region {
+                            Region::Active => {
+                                assert!((collector - free).abs() < size);
+                                assert!(across >= -law.room - 1e-6);
+                            }
+                            Region::Saturated => {
+                                assert!((across + law.room).abs() < 1e-9 * (1.0 + z + k.abs()));
+                                assert!(collector <= free + size);
+                            }
+                            Region::Reversed => {
+                                assert!((collector + law.base_rest * s.drive).abs() < size);
+                            }
+                        }
+                    }
+                }
+            }
+        }
+    }
+
+    #[test]
+    fn the_tangent_is_the_slope_at_rest() {
+        for law in some() {
+            for z in [10.0, 5e3, 1e6] {
+                let (p, q) = law.tangent(z.into());
+                // Into the region: a saturated rest has a corner at rest.
+                let (v, k) = (1e-6, -1e-6);
+                let by_v = law.solve(v, 0.0, z, &State::REST).collector / v;
+                let by_k = law.solve(0.0, k, z, &State::REST).collector / k;
+                assert!(
+                    (by_v - p.re).abs() < 1e-4 * p.re.abs() + 1e-12,
+                    "{law:?} {z}"
+                );
+                assert!(
+                    (by_k - q.re).abs() < 1e-4 * q.re.abs() + 1e-12,
+                    "{law:?} {z}: {by_k} {q}"
+                );
+            }
+        }
+    }
+
+    /// Degenerated gain and output resistance (Gray and Meyer, common emitter with emitter degeneration).
+    #[test]
+    fn small_signal_matches_the_textbook() {
+        let law = stage(0.0, 1e3, 0.01);
+        let (gm, r_pi, ro) = (0.04f64, 5e3, 1e5);
+        // g_m/(1 + g_m·R_E(1 + 1/β)) without r_o.
+        let ideal = stage(0.0, 1e3, 0.0);
+        let p = ideal.tangent(1e3.into()).0.re;
+        assert!((p / (gm / (1.0 + gm * 1e3 * (1.0 + 1.0 / 200.0))) - 1.0).abs() < 1e-12);
+        // r_o(1 + g_m(R_E ∥ r_π)) + R_E ∥ r_π.
+        let parallel = 1e3 * r_pi / (1e3 + r_pi);
+        let expected = ro * (1.0 + gm * parallel) + parallel;
+        assert!((law.collector_resistance() / expected - 1.0).abs() < 1e-12);
+    }
+
+    #[test]
+    fn the_carried_exponential_is_exact() {
+        for k in -249..250 {
+            let x = f64::from(k) * 1e-3;
+            assert!((exp_near(x) / x.exp() - 1.0).abs() < 4e-16, "{x}");
+        }
+    }
 }

@@ -1,8 +1,9 @@
 //! The transistor stage in time.
 //!
-//! The one state is the voltage behind the next stage's coupling capacitor, u' = (v − u)/(RC), with the collector's voltage v as
+//! One state is the voltage behind the next stage's coupling capacitor, u' = (v − u)/(RC), with the collector's voltage v as
 //! its input. Stepped by [`StepWeights`], whose newest weight makes the collector's load of this sample a plain resistance behind
-//! a known voltage: one equation a sample. v grows by less than u does, so that the step is stable at any setting.
+//! a known voltage: one equation a sample. v grows by less than u does, so that the step is stable at any setting. The other is
+//! the shift of the bias by what the base takes beyond the tangent's share; its newest weight is a resistance in the base loop.
 
 use super::TransistorStage;
 use crate::physics::bipolar::{CommonEmitter, Region, State};
@@ -23,11 +24,18 @@ pub fn runner(stage: &TransistorStage, conditions: &Conditions) -> Box<dyn Runne
         output.start_at(stage.next_rest - stage.quiescent.collector);
     }
     let core = match conditions.curves {
-        Curves::Bent => Core::Bent {
-            law: stage.law,
-            near: State::REST,
-            age: 0,
-        },
+        Curves::Bent => {
+            let shift = Shift::new(stage, conditions.rate);
+            Core::Bent {
+                law: CommonEmitter {
+                    base_resistance: stage.law.base_resistance + shift.weights.now,
+                    ..stage.law
+                },
+                near: State::REST,
+                age: 0,
+                shift,
+            }
+        }
         Curves::Straight => {
             let (p, q) = stage.law.tangent(output.impedance.into());
             Core::Straight { p: p.re, q: q.re }
@@ -71,6 +79,7 @@ enum Core {
         law: CommonEmitter,
         near: State,
         age: u32,
+        shift: Shift,
     },
 }
 
@@ -90,7 +99,12 @@ impl Runner for StageRunner {
                     *x = self.output.settle(k - z * (*p * *x + *q * k));
                 }
             }
-            Core::Bent { law, near, age } => {
+            Core::Bent {
+                law,
+                near,
+                age,
+                shift,
+            } => {
                 for (x, drawn) in block.iter_mut().zip(&self.currents) {
                     *age += 1;
                     if *age == RENEWAL {
@@ -98,7 +112,8 @@ impl Runner for StageRunner {
                         near.drive = near.log_drive.exp();
                     }
                     let k = self.output.open(*drawn);
-                    *near = law.solve(*x, k, z, near);
+                    *near = law.solve(shift.loop_voltage(*x), k, z, near);
+                    shift.settle(law.base_rest * (near.drive - 1.0));
                     let limited = near.region != Region::Active || near.collector < self.least;
                     self.events.clipped += u64::from(limited);
                     *x = self.output.settle(k - z * near.collector);
@@ -110,6 +125,69 @@ impl Runner for StageRunner {
 
     fn events(&self) -> Events {
         self.events
+    }
+}
+
+/// The bias shift q: q' = −leak·q + stiffness·(tangent's base current − base current).
+struct Shift {
+    /// With the stiffness in them, Ω.
+    weights: StepWeights,
+    /// Base current for each volt in the loop at rest, S.
+    tangent: f64,
+    shift: f64,
+    /// Of this sample: what is known of the next shift, V, and the tangent's current, A.
+    known: f64,
+    straight: f64,
+    last: f64,
+    before: f64,
+}
+
+impl Shift {
+    fn new(stage: &TransistorStage, rate: f64) -> Self {
+        let step = 1.0 / rate;
+        let (leak, stiffness) = stage.blocking.map_or((0.0, 0.0), |b| (b.leak, b.stiffness));
+        let mut weights = StepWeights::new(leak, step);
+        // A capacitor that a conducting base charges within a sample: first order, but stable.
+        if stiffness * step > stage.law.base_resistance {
+            weights = StepWeights {
+                now: weights.now + weights.last + weights.before,
+                last: 0.0,
+                before: 0.0,
+                ..weights
+            };
+        }
+        Self {
+            weights: StepWeights {
+                now: weights.now * stiffness,
+                last: weights.last * stiffness,
+                before: weights.before * stiffness,
+                ..weights
+            },
+            tangent: stage.law.base_tangent(stage.mid_band()),
+            shift: 0.0,
+            known: 0.0,
+            straight: 0.0,
+            last: 0.0,
+            before: 0.0,
+        }
+    }
+
+    /// Voltage in the base loop, V, whose resistance holds the newest weight, under the input's `v` (V).
+    #[inline]
+    fn loop_voltage(&mut self, v: f64) -> f64 {
+        let w = &self.weights;
+        self.known = w.decay * self.shift + w.last * self.last + w.before * self.before;
+        self.straight = self.tangent * v;
+        v + self.known + w.now * self.straight
+    }
+
+    /// Takes the base current away from rest, A.
+    #[inline]
+    fn settle(&mut self, base: f64) {
+        let excess = self.straight - base;
+        self.shift = self.known + self.weights.now * excess;
+        self.before = self.last;
+        self.last = excess;
     }
 }
 

@@ -25,8 +25,9 @@ use quiescent::Quiescent;
 ///
 /// The base divider is taken to set the collector current to `bias` whatever stands before, and the bypass capacitor to be a
 /// short at every frequency of the signal: neither has a corner here. The base loop is solved with the source's own resistance
-/// (mid-band), so that a stage driven by a current is as straight as on the bench; the collector node is solved with the next
-/// stage's load, its coupling capacitor included.
+/// (mid-band), so that a stage driven by a current is as straight as on the bench. What a bent base current leaves on the
+/// coupling capacitor before the base shifts the bias, and blocks the stage after an overload. The collector node is solved
+/// with the next stage's load, its coupling capacitor included.
 ///
 /// In frequency: one input pole (C_π = g_m/(2π·f_T), and Miller's share of C_µ, at rest, against the whole source resistance) and
 /// the collector node's lag, both linear. Good for poles above the audio band; a clipped stage really is faster than its pole, and
@@ -39,6 +40,8 @@ pub struct TransistorStage {
     /// Volts of the base loop per volt at the node before.
     input_gain: f64,
     input_pole: FirstOrderLaw,
+    /// The coupling capacitor before the base.
+    blocking: Option<Blocking>,
     /// The next stage's resistance behind its coupling capacitor.
     branch: Option<Branch>,
     /// Where the coupling capacitor's far side rests, V.
@@ -49,6 +52,15 @@ pub struct TransistorStage {
     /// Noise currents drawn from the collector node.
     at_collector: Vec<Contributor>,
     warnings: Vec<String>,
+}
+
+/// What a coupling capacitor before the base does to the base loop besides its linear corner.
+#[derive(Debug, Clone, Copy)]
+struct Blocking {
+    /// Rate at which it recovers while the base takes nothing, 1/s: 1/(C(R_source + R_divider)).
+    leak: f64,
+    /// Loop volts for each coulomb that the base takes, 1/F.
+    stiffness: f64,
 }
 
 impl TransistorStage {
@@ -80,6 +92,13 @@ impl TransistorStage {
             input_gain: open_circuit / (1.0 + before.seen * divider),
             law,
             branch: next.branch,
+            blocking: before.blocked.map(|c| {
+                let divided = 1.0 + divider * before.seen;
+                Blocking {
+                    leak: divider / (c * divided),
+                    stiffness: 1.0 / (c * divided * divided),
+                }
+            }),
             next_rest: next.return_voltage,
             input_pole: FirstOrderLaw::low_pass(f64::INFINITY),
             lag: FirstOrderLaw::low_pass(f64::INFINITY),
