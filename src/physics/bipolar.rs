@@ -183,14 +183,13 @@ impl CommonEmitter {
             // The Early effect moves the root by a few units at most.
             let step = (value / steep).clamp(-2.0, 2.0);
             let mut next = (w - step).min(HIGHEST);
+            if (next - w).abs() <= 1e-15 * w.abs().max(1.0) {
+                break;
+            }
             if next <= low || next >= high {
                 next = low + (high - low) / 2.0;
             }
-            let settled = (next - w).abs() <= 1e-15 * w.abs().max(1.0);
             w = next;
-            if settled || !next.is_finite() {
-                break;
-            }
         }
         self.state(w, w.exp(), k, z)
     }
@@ -275,8 +274,8 @@ fn junction_loop(vt: f64, a: f64, drive: f64) -> f64 {
     let mut w = if target > 0.0 {
         target.min((1.0 + target / a).ln())
     } else {
-        // e^w > 0 leaves at most this.
-        target + a
+        // e^w > 0 leaves at most the second.
+        (target + a).min(0.0)
     };
     w = w.min(HIGHEST * 3.0);
     for _ in 0..100 {
@@ -327,7 +326,7 @@ mod tests {
         let mut all = Vec::new();
         for base in [0.0, 200.0, 50e3, 1e7] {
             for emitter in [0.0, 10.0, 1e3] {
-                for early in [0.0, 0.01, 0.3] {
+                for early in [0.0, 0.01, 0.2] {
                     all.push(stage(base, emitter, early));
                 }
             }
@@ -385,7 +384,10 @@ mod tests {
                         let size = 1e-12 + 1e-9 * (free.abs() + collector.abs());
                         match s.region {
                             Region::Active => {
-                                assert!((collector - free).abs() < size);
+                                assert!(
+                                    (collector - free).abs() < size,
+                                    "{law:?} {z} {k} {v}: {collector} {free}"
+                                );
                                 assert!(across >= -law.room - 1e-6);
                             }
                             Region::Saturated => {

@@ -1,0 +1,3 @@
+//! Stations against things outside the project.
+
+mod transistor;
