@@ -6,6 +6,8 @@ use num_complex::Complex64;
 const HIGHEST: f64 = 230.0;
 /// Longest step that the search from the last state takes in the logarithm of the drive.
 const LONGEST: f64 = 0.25;
+/// Logarithm of the drive below which its exponential bends nothing that a double could hold beside the rest.
+const DEEP: f64 = -40.0;
 
 /// A common emitter around its rest. Every variable is a deviation from rest, except the drive `j` = exp(ΔV_BE/V_T), 1 at rest.
 ///
@@ -102,10 +104,9 @@ impl CommonEmitter {
         }
     }
 
-    /// What the base loop needs beyond `v` at ln j = `w`, V, and its slope against w, V.
+    /// What the base loop needs beyond `v` at ln j = `w`, V, and its slope against w, V, under the collector's current and slope.
     #[inline]
-    fn excess(&self, w: f64, j: f64, v: f64, k: f64, z: f64) -> (f64, f64) {
-        let (current, slope, _) = self.collector(j, k, z);
+    fn excess(&self, w: f64, j: f64, v: f64, (current, slope): (f64, f64)) -> (f64, f64) {
         let both = self.base_resistance + self.emitter_resistance;
         let value = self.thermal_voltage * w
             + both * self.base_rest * (j - 1.0)
@@ -118,22 +119,39 @@ impl CommonEmitter {
 
     /// The state under the base voltage `v` (V) with Δv_C = `k` − `z`·ΔI_C (V, Ω; `z` > 0), searched from `near`.
     ///
-    /// Newton's method in ln j, with the exponential carried along by its series: a signal that moves little between samples
-    /// costs no library function. Where that does not settle, closed forms start it anew. Good to 1e-13 of V_T.
+    /// Newton's method in ln j with Chebyshev's term of second order, the exponential carried along by its series: a signal that
+    /// moves little between samples costs no library function. Where that does not settle, closed forms start it anew. Good to
+    /// 1e-13 of V_T.
     #[inline]
     pub fn solve(&self, v: f64, k: f64, z: f64, near: &State) -> State {
         let (mut w, mut j) = (near.log_drive, near.drive);
-        for _ in 0..5 {
-            let (value, steep) = self.excess(w, j, v, k, z);
-            let step = value / steep;
-            if step.is_nan() || step.abs() > LONGEST {
+        for _ in 0..6 {
+            let (current, slope, region) = self.collector(j, k, z);
+            let (value, steep) = self.excess(w, j, v, (current, slope));
+            let per = 1.0 / steep;
+            let step = value * per;
+            if step.abs() <= LONGEST {
+                // What bends is the exponential, whose second derivative is its first.
+                let step = step * (1.0 + 0.5 * step * (1.0 - self.thermal_voltage * per));
+                let factor = exp_near(-step);
+                let last = j;
+                w -= step;
+                j *= factor;
+                if step.abs() < 1e-6 {
+                    // The tangent carries the current over, and the next step would be the third power of this one.
+                    return State {
+                        log_drive: w,
+                        drive: j,
+                        collector: current + slope * (j - last),
+                        region,
+                    };
+                }
+            } else if w < DEEP && w - step < DEEP {
+                // No current to speak of on either side: a straight line.
+                w -= step;
+                j = w.exp();
+            } else {
                 break;
-            }
-            w -= step;
-            j *= exp_near(-step);
-            // The next step would be less than the square of this one.
-            if step.abs() < 1e-7 {
-                return self.state(w, j, k, z);
             }
         }
         self.solve_from_anywhere(v, k, z)
@@ -174,7 +192,8 @@ impl CommonEmitter {
         let mut w = active.max(saturated).min(reversed).min(HIGHEST);
         let (mut low, mut high) = (f64::NEG_INFINITY, f64::INFINITY);
         for _ in 0..200 {
-            let (value, steep) = self.excess(w, w.exp(), v, k, z);
+            let (current, slope, _) = self.collector(w.exp(), k, z);
+            let (value, steep) = self.excess(w, w.exp(), v, (current, slope));
             if value > 0.0 {
                 high = w;
             } else {
@@ -289,20 +308,30 @@ fn junction_loop(vt: f64, a: f64, drive: f64) -> f64 {
     w
 }
 
-/// e^x for |x| < 0.25, by its series to the last place.
+/// e^x for |x| < 0.26, by its series to the last place.
 #[inline]
 fn exp_near(x: f64) -> f64 {
-    // Small steps need few terms: x⁵/120 < 1e-17 below 1e-3.
+    const F: [f64; 13] = {
+        let mut inverse = [1.0; 13];
+        let mut k = 1;
+        while k < 13 {
+            inverse[k] = inverse[k - 1] / k as f64;
+            k += 1;
+        }
+        inverse
+    };
+    let x2 = x * x;
+    let low = (1.0 + x) + x2 * (F[2] + x * F[3]);
     if x.abs() < 1e-3 {
-        return 1.0 + x * (1.0 + x * (0.5 + x * (1.0 / 6.0 + x * (1.0 / 24.0 + x / 120.0))));
+        return low + x2 * x2 * (F[4] + x * F[5]);
     }
-    let mut sum = 1.0;
-    let mut k = 13.0;
-    while k > 0.0 {
-        sum = 1.0 + x / k * sum;
-        k -= 1.0;
+    let x4 = x2 * x2;
+    let middle = (F[4] + x * F[5]) + x2 * (F[6] + x * F[7]);
+    if x.abs() < 0.02 {
+        return low + x4 * middle;
     }
-    sum
+    let high = (F[8] + x * F[9]) + x2 * (F[10] + x * F[11]) + x4 * F[12];
+    low + x4 * (middle + x4 * high)
 }
 
 #[cfg(test)]

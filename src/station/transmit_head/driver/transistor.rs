@@ -13,9 +13,9 @@ use crate::station::wiring::{Drive, Load};
 
 /// A transistor with its emitter resistor and base divider; the divider is taken to set the bias whatever stands before.
 ///
-/// The base loop is solved exactly, with the source's own resistance in mid-band; the emitter's forward voltage enters the Early
-/// effect by its tangent. f_T and C_µ make one linear input pole at rest. The supply's limit is hard: the current at which the
-/// string, the least collector voltage and the emitter resistor use up the supply.
+/// The base loop is solved with the source's own resistance in mid-band and the emitter string's law in the collector. f_T and C_µ
+/// make one linear input pole at rest. The supply's limit is hard: the current at which the string, the least collector voltage
+/// and the emitter resistor use up the supply. Heat moves that limit, but not the Early effect.
 #[derive(Debug, Clone)]
 pub struct Modulator {
     law: CommonEmitter,
@@ -171,12 +171,29 @@ impl Modulator {
         } else {
             State::REST
         };
-        let asked = self.law.asked + self.law.solve(v, 0.0, self.load, &start).collector;
+        // First with the string's tangent as its law; what that left out then shifts the collector.
+        let first = self.law.solve(v, 0.0, self.load, &start);
+        let around = self
+            .law
+            .solve(v, self.bend(first.collector), self.load, &first);
+        let asked = self.law.asked + around.collector;
         if asked < self.surely {
             return (asked, false);
         }
         let allowed = self.compliance.current(self.room - heat_voltage).max(0.0);
         (asked.min(allowed), asked >= allowed)
+    }
+
+    /// Forward voltage that the string's law has less than its tangent, V, at `deviation` (A) from the bias.
+    fn bend(&self, deviation: f64) -> f64 {
+        let SeriesLoop {
+            slope_voltage,
+            saturation,
+            ..
+        } = self.compliance;
+        let rest = self.law.asked + saturation;
+        let part = (deviation / rest).max(-1.0 + f64::EPSILON);
+        slope_voltage * (part - part.ln_1p())
     }
 
     /// Slope of the current against the loop's voltage at the rest `current` (A), S.

@@ -65,6 +65,9 @@ fn slope_and_input_are_the_schematics() {
 }
 
 /// Large signals against bisection of the whole loop: base current, junction, Early effect, the LED's own law, and the supply.
+///
+/// The string's law comes in by two passes: the first takes its tangent and errs by 2.4e-4 at seven times the rest, the second leaves
+/// a hundredth of that.
 #[test]
 fn currents_solve_the_loop_up_to_the_supply() {
     let source = 600.0;
@@ -79,7 +82,7 @@ fn currents_solve_the_loop_up_to_the_supply() {
         }
         (a + b) / 2.0
     };
-    // The LED's law from its own readings at two currents is what the resistor driver's tests hold; here from the catalogue.
+    // The LED's law with the catalogue's values.
     let design =
         std::fs::read_to_string(concat!(env!("CARGO_MANIFEST_DIR"), "/configs/parts.toml"))
             .unwrap();
@@ -120,7 +123,7 @@ fn currents_solve_the_loop_up_to_the_supply() {
         let i = bisect(1e-30, 1.0, &loop_).min(most);
         let modelled = (head.curve(v) + reading(head, "flux")) / efficiency(&link);
         assert!(
-            (modelled - i).abs() < 2e-5 * (20e-3 + i),
+            (modelled - i).abs() < 1e-5 * i.max(20e-3),
             "{v}: {modelled} {i}"
         );
     }
