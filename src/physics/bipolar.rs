@@ -5,7 +5,9 @@ use num_complex::Complex64;
 /// Logarithm of the junction's drive beyond which nothing physical happens any more; keeps the powers of it finite.
 const HIGHEST: f64 = 230.0;
 /// Longest step that the search from the last state takes in the logarithm of the drive.
-const LONGEST: f64 = 0.25;
+const LONGEST: f64 = 0.2;
+/// Step below which the terms left out of the inverse series lie under 1e-13.
+const CLOSE: f64 = 5e-4;
 /// Logarithm of the drive below which its exponential bends nothing that a double could hold beside the rest.
 const DEEP: f64 = -40.0;
 
@@ -59,6 +61,8 @@ pub struct State {
     /// Collector current away from rest, A.
     pub collector: f64,
     pub region: Region,
+    /// How the last search moved ln j, and the factor on j: the next starts as far on.
+    moved: (f64, f64),
 }
 
 impl State {
@@ -68,13 +72,39 @@ impl State {
         drive: 1.0,
         collector: 0.0,
         region: Region::Active,
+        moved: (0.0, 1.0),
     };
+
+    /// At rest but for the drive `j` (> 0), as a start.
+    pub fn at_drive(j: f64) -> Self {
+        Self {
+            log_drive: j.ln(),
+            drive: j,
+            ..Self::REST
+        }
+    }
+
+    /// Takes the exponential anew, so that roundings of many steps do not add up.
+    pub fn renew(&mut self) {
+        self.drive = self.log_drive.exp();
+    }
+}
+
+/// The collector's current (A, away from rest) with its first and second derivative against the drive.
+#[derive(Clone, Copy)]
+struct Collector {
+    current: f64,
+    slope: f64,
+    bend: f64,
+    /// −bend'/3bend.
+    hold: f64,
+    region: Region,
 }
 
 impl CommonEmitter {
-    /// Collector current away from rest at the drive `j`, its slope against `j`, and the region, under Δv_C = k − z·ΔI_C.
+    /// The collector at the drive `j` under Δv_C = k − z·ΔI_C.
     #[inline]
-    fn collector(&self, j: f64, k: f64, z: f64) -> (f64, f64, Region) {
+    fn collector(&self, j: f64, k: f64, z: f64) -> Collector {
         let Self {
             emitter_resistance: re,
             base_rest: ib,
@@ -86,69 +116,99 @@ impl CommonEmitter {
         // ΔV_CE = k − z·ΔI_C − R_E·(ΔI_B + ΔI_C) put into the law is linear in I_C.
         let across = z + re;
         let base = ib * (j - 1.0);
-        let scale = 1.0 / (1.0 + asked * j * early * across);
+        let held = asked * early * across;
+        let scale = 1.0 / (1.0 + j * held);
         let factor = 1.0 + early * (k + across * ic - re * base);
         let active = asked * j * factor * scale;
-        let slope =
-            (asked * (factor - j * early * re * ib) - active * asked * early * across) * scale;
+        let slope = (asked * (factor - j * early * re * ib) - active * held) * scale;
         let current = active - ic;
         let limit = k + self.room - re * base;
         if current * across <= limit && active >= -ib * j {
-            return (current, slope, Region::Active);
+            return Collector {
+                current,
+                slope,
+                bend: -2.0 * scale * (held * slope + asked * early * re * ib),
+                hold: held * scale,
+                region: Region::Active,
+            };
         }
         let (limited, least) = (limit / across, -ic - ib * j);
-        if limited > least {
+        let (current, slope, region) = if limited > least {
             (limited, -re * ib / across, Region::Saturated)
         } else {
             (least, -ib, Region::Reversed)
+        };
+        Collector {
+            current,
+            slope,
+            bend: 0.0,
+            hold: 0.0,
+            region,
         }
     }
 
-    /// What the base loop needs beyond `v` at ln j = `w`, V, and its slope against w, V, under the collector's current and slope.
+    /// What the base loop needs beyond `v` at ln j = `w`, V, and its slope against w, V.
     #[inline]
-    fn excess(&self, w: f64, j: f64, v: f64, (current, slope): (f64, f64)) -> (f64, f64) {
+    fn excess(&self, w: f64, j: f64, v: f64, c: &Collector) -> (f64, f64) {
         let both = self.base_resistance + self.emitter_resistance;
         let value = self.thermal_voltage * w
             + both * self.base_rest * (j - 1.0)
-            + self.emitter_resistance * current
+            + self.emitter_resistance * c.current
             - v;
         let steep =
-            self.thermal_voltage + j * (both * self.base_rest + self.emitter_resistance * slope);
+            self.thermal_voltage + j * (both * self.base_rest + self.emitter_resistance * c.slope);
         (value, steep)
     }
 
     /// The state under the base voltage `v` (V) with Δv_C = `k` − `z`·ΔI_C (V, Ω; `z` > 0), searched from `near`.
     ///
-    /// Newton's method in ln j with Chebyshev's term of second order, the exponential carried along by its series: a signal that
-    /// moves little between samples costs no library function. Where that does not settle, closed forms start it anew. Good to
-    /// 1e-13 of V_T.
+    /// Newton's method in ln j with the next two terms of the inverse series, the exponential carried along by its own: a signal
+    /// that moves smoothly between samples costs one evaluation and no library function. Where that does not settle, closed
+    /// forms start it anew. Good to 1e-13 of V_T.
     #[inline]
     pub fn solve(&self, v: f64, k: f64, z: f64, near: &State) -> State {
-        let (mut w, mut j) = (near.log_drive, near.drive);
+        let mut w = near.log_drive + near.moved.0;
+        let mut j = near.drive * near.moved.1;
         for _ in 0..6 {
-            let (current, slope, region) = self.collector(j, k, z);
-            let (value, steep) = self.excess(w, j, v, (current, slope));
+            let c = self.collector(j, k, z);
+            let (value, steep) = self.excess(w, j, v, &c);
             let per = 1.0 / steep;
-            let step = value * per;
-            if step.abs() <= LONGEST {
-                // What bends is the exponential, whose second derivative is its first.
-                let step = step * (1.0 + 0.5 * step * (1.0 - self.thermal_voltage * per));
-                let factor = exp_near(-step);
+            let t = value * per;
+            if t.abs() <= LONGEST {
+                // The exponential is its own derivative; the Early effect bends it by a rational law, whose third derivative
+                // follows from its second.
+                let bend = self.emitter_resistance * j * j * c.bend;
+                let second = 1.0 + (bend - self.thermal_voltage) * per;
+                let third = second + bend * (2.0 - 3.0 * j * c.hold) * per;
+                let step =
+                    -t * (1.0 + t * (0.5 * second + t * (0.5 * second * second - third / 6.0)));
+                let factor = exp_near(step);
                 let last = j;
-                w -= step;
+                w += step;
                 j *= factor;
-                if step.abs() < 1e-6 {
-                    // The tangent carries the current over, and the next step would be the third power of this one.
-                    return State {
-                        log_drive: w,
-                        drive: j,
-                        collector: current + slope * (j - last),
-                        region,
-                    };
+                if t.abs() < CLOSE {
+                    let there = self.carried(&c, last, j, k, z);
+                    // The step holds inside one region, not across the corner between two.
+                    if there.region == c.region || t.abs() < 1e-13 {
+                        // Made anew each time: a factor carried along would gather roundings twice over.
+                        let moved = w - near.log_drive;
+                        let smooth = moved.abs() < LONGEST;
+                        return State {
+                            log_drive: w,
+                            drive: j,
+                            collector: there.current,
+                            region: there.region,
+                            moved: if smooth {
+                                (moved, exp_near(moved))
+                            } else {
+                                (0.0, 1.0)
+                            },
+                        };
+                    }
                 }
-            } else if w < DEEP && w - step < DEEP {
+            } else if w < DEEP && w - t < DEEP {
                 // No current to speak of on either side: a straight line.
-                w -= step;
+                w -= t;
                 j = w.exp();
             } else {
                 break;
@@ -157,13 +217,27 @@ impl CommonEmitter {
         self.solve_from_anywhere(v, k, z)
     }
 
+    /// The collector at the drive `j` from `c` at the drive `from` close by.
+    #[inline]
+    fn carried(&self, c: &Collector, from: f64, j: f64, k: f64, z: f64) -> Collector {
+        let rise = j - from;
+        let current = c.current + rise * (c.slope + 0.5 * rise * c.bend);
+        let limit = k + self.room - self.emitter_resistance * self.base_rest * (j - 1.0);
+        if c.region == Region::Active && current * (z + self.emitter_resistance) <= limit {
+            Collector { current, ..*c }
+        } else {
+            self.collector(j, k, z)
+        }
+    }
+
     fn state(&self, log_drive: f64, drive: f64, k: f64, z: f64) -> State {
-        let (collector, _, region) = self.collector(drive, k, z);
+        let c = self.collector(drive, k, z);
         State {
             log_drive,
             drive,
-            collector,
-            region,
+            collector: c.current,
+            region: c.region,
+            moved: (0.0, 1.0),
         }
     }
 
@@ -192,8 +266,8 @@ impl CommonEmitter {
         let mut w = active.max(saturated).min(reversed).min(HIGHEST);
         let (mut low, mut high) = (f64::NEG_INFINITY, f64::INFINITY);
         for _ in 0..200 {
-            let (current, slope, _) = self.collector(w.exp(), k, z);
-            let (value, steep) = self.excess(w, w.exp(), v, (current, slope));
+            let j = w.exp();
+            let (value, steep) = self.excess(w, j, v, &self.collector(j, k, z));
             if value > 0.0 {
                 high = w;
             } else {

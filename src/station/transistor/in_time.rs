@@ -109,7 +109,7 @@ impl Runner for StageRunner {
                     *age += 1;
                     if *age == RENEWAL {
                         *age = 0;
-                        near.drive = near.log_drive.exp();
+                        near.renew();
                     }
                     let k = self.output.open(*drawn);
                     *near = law.solve(shift.loop_voltage(*x), k, z, near);

@@ -163,11 +163,7 @@ impl Modulator {
     pub fn current(&self, v: f64, heat_voltage: f64, near: f64) -> (f64, bool) {
         let drive = near / self.law.asked;
         let start = if drive > 0.0 {
-            State {
-                log_drive: drive.ln(),
-                drive,
-                ..State::REST
-            }
+            State::at_drive(drive)
         } else {
             State::REST
         };
