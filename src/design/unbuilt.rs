@@ -4,12 +4,9 @@ use super::error::DesignError;
 use super::section::Section;
 
 /// Kinds, by the section's path without numbers or names.
-const KINDS: [(&str, &str); 9] = [
-    ("transmitter.driver", "transistor"),
-    ("transmitter.stage", "transistor"),
+const KINDS: [(&str, &str); 6] = [
     ("transmitter.stage", "filter"),
     ("transmitter.stage", "power"),
-    ("receiver.stage", "transistor"),
     ("receiver.stage", "filter"),
     ("receiver.stage", "power"),
     ("output", "loudspeaker"),

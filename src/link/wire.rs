@@ -13,6 +13,7 @@ use crate::station::output::Output;
 use crate::station::path::LightPath;
 use crate::station::receive_head::{LightAtRest, Sensitivity, receive_head};
 use crate::station::source::Source;
+use crate::station::transistor::TransistorStage;
 use crate::station::transmit_head::TransmitHead;
 use crate::station::trim::Trim;
 use crate::station::wiring::{Drive, Load};
@@ -28,7 +29,7 @@ pub fn wire(design: &Design) -> Result<Link, DesignError> {
     stations.push(Box::new(source));
     drive = stages(
         &design.transmitter_stages,
-        TransmitHead::input_load(&design.driver),
+        TransmitHead::input_load(&design.driver, t),
         drive,
         t,
         &mut stations,
@@ -63,7 +64,7 @@ pub fn wire(design: &Design) -> Result<Link, DesignError> {
     };
     let receiver_at = stations.len();
     let receiver = &design.receiver_stages;
-    let next = input_load(receiver, Output::input_load(&design.output));
+    let next = input_load(receiver, Output::input_load(&design.output), t);
     let (head, offers) = receive_head(
         &design.front_end,
         &design.detector,
@@ -129,20 +130,23 @@ fn units(sections: &[Section]) -> Vec<(&Section, usize)> {
 }
 
 /// What one stage shows to what drives it, with `next` behind it.
-fn stage_load(section: &Section, next: &Load) -> Load {
+fn stage_load(section: &Section, next: &Load, temperature: f64) -> Load {
     match section.kind.as_deref() {
         Some("coupling") => Coupling::input_load(section, next),
         Some("trim") => Trim::input_load(section, next),
+        Some("transistor") => TransistorStage::input_load(section, next, temperature),
         _ => OpampStage::input_load(section),
     }
 }
 
 /// What a row of stages shows to what drives it, `end` behind the last.
-fn input_load(sections: &[Section], end: Load) -> Load {
+fn input_load(sections: &[Section], end: Load, temperature: f64) -> Load {
     units(sections)
         .iter()
         .rev()
-        .fold(end, |next, (section, _)| stage_load(section, &next))
+        .fold(end, |next, (section, _)| {
+            stage_load(section, &next, temperature)
+        })
 }
 
 /// Adds a row of stages between `drive` and the load `end`; gives what the last one offers.
@@ -157,7 +161,7 @@ fn stages(
     let mut loads = vec![end];
     for (section, _) in row.iter().rev() {
         let next = loads[loads.len() - 1];
-        loads.push(stage_load(section, &next));
+        loads.push(stage_load(section, &next, temperature));
     }
     loads.pop();
     for ((section, unit), next) in row.into_iter().zip(loads.iter().rev()) {
@@ -169,6 +173,11 @@ fn stages(
             }
             Some("trim") => {
                 let stage = Trim::new(section, &drive, next, temperature);
+                drive = stage.drive();
+                stations.push(Box::new(stage));
+            }
+            Some("transistor") => {
+                let stage = TransistorStage::new(section, &drive, next, temperature);
                 drive = stage.drive();
                 stations.push(Box::new(stage));
             }

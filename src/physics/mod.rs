@@ -1,6 +1,7 @@
 //! Pure laws of light and circuits, each with its published source. Numbers in, numbers out: no files, no blocks, no state.
 
 pub mod air;
+pub mod bipolar;
 pub mod constants;
 pub mod diode;
 pub mod fibre;

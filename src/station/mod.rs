@@ -10,6 +10,7 @@ pub mod output;
 pub mod path;
 pub mod receive_head;
 pub mod source;
+pub mod transistor;
 pub mod transmit_head;
 pub mod trim;
 pub mod wiring;

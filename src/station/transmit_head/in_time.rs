@@ -22,6 +22,8 @@ pub fn runner(head: &TransmitHead, conditions: &Conditions) -> Box<dyn Runner> {
         division: head.division,
         flux: head.rest.flux,
         at_input: noise::sources(&head.at_input, conditions),
+        input_pole: head.input_pole.section(conditions.rate),
+        behind_pole: noise::sources(&head.behind_pole, conditions),
         intensity: head.intensity.source(conditions),
         carriers,
         relative: Vec::new(),
@@ -66,6 +68,8 @@ struct HeadRunner {
     division: f64,
     flux: f64,
     at_input: Vec<NoiseSource>,
+    input_pole: FirstOrder,
+    behind_pole: Vec<NoiseSource>,
     intensity: Option<NoiseSource>,
     carriers: FirstOrder,
     relative: Vec<f64>,
@@ -135,6 +139,8 @@ impl Runner for HeadRunner {
     fn run(&mut self, block: &mut [f64], _: &[f64]) {
         block.iter_mut().for_each(|x| *x *= self.division);
         noise::add_all(&mut self.at_input, block);
+        self.input_pole.run(block);
+        noise::add_all(&mut self.behind_pole, block);
         match &mut self.law {
             Law::Straight(heated) => heated.run(block),
             Law::Bent(bent) => {

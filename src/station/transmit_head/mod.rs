@@ -29,8 +29,11 @@ pub struct TransmitHead {
     division: f64,
     rest: Rest,
     tangent: Tangent,
-    /// Noise voltages in series with the driver's input.
+    /// Low-pass of the driver's own input.
+    input_pole: FirstOrderLaw,
+    /// Noise voltages in series with the driver's input, before that pole and behind it.
     at_input: Vec<Contributor>,
+    behind_pole: Vec<Contributor>,
     /// Relative noise of the light, 1/Hz.
     intensity: Contributor,
     supply: f64,
@@ -64,12 +67,9 @@ struct Tangent {
 }
 
 impl TransmitHead {
-    /// What the driver shows to the stage before it.
-    pub fn input_load(driver: &Section) -> Load {
-        Load::resistor(
-            driver.optional("input_resistance").unwrap_or(f64::INFINITY),
-            0.0,
-        )
+    /// What the driver shows to the stage before it; `temperature` in K.
+    pub fn input_load(driver: &Section, temperature: f64) -> Load {
+        Driver::input_load(driver, temperature)
     }
 
     /// From `[transmitter.driver]` and `[transmitter.emitter]`, behind `before`; `temperature` in K.
@@ -79,9 +79,7 @@ impl TransmitHead {
         before: &Drive,
         temperature: f64,
     ) -> Self {
-        let load = Self::input_load(driver_section);
-        let division = before.division(load.signal_conductance());
-        let behind = before.series * division;
+        let load = Self::input_load(driver_section, temperature);
         let input = if before.blocked.is_some() {
             before.rest
         } else {
@@ -89,7 +87,10 @@ impl TransmitHead {
         };
         let vt = thermal_voltage(temperature);
         let mut emitter = Emitter::new(emitter_section, vt, temperature);
-        let mut driver = Driver::new(driver_section, &emitter, behind, vt);
+        let mut driver = Driver::new(driver_section, &emitter, before, vt, temperature);
+        let division = driver
+            .input_gain()
+            .unwrap_or_else(|| before.division(load.signal_conductance()));
 
         let current = driver.current(input, input, 0.0, 0.0).0;
         let forward_voltage = emitter.forward_voltage(current, 0.0);
@@ -108,6 +109,7 @@ impl TransmitHead {
         let tangent = tangent(&driver, &emitter, &rest);
 
         let driver_name = &driver_section.path;
+        let [outer, behind_pole] = driver.noises();
         let at_input = driver
             .noisy_resistances(&emitter)
             .into_iter()
@@ -117,6 +119,7 @@ impl TransmitHead {
                     crate::physics::noise::johnson(r, temperature),
                 )
             })
+            .chain(outer)
             .collect();
         let intensity = Contributor::white(
             format!("{}.intensity", emitter_section.path),
@@ -124,7 +127,7 @@ impl TransmitHead {
                 .optional("intensity_noise")
                 .map_or(0.0, |db| 10f64.powf(db / 10.0)),
         );
-        let mut warnings = Vec::new();
+        let mut warnings = driver.warnings();
         let limit = emitter.max_current;
         if current > limit {
             warnings.push(format!(
@@ -155,12 +158,14 @@ impl TransmitHead {
         Self {
             path: "transmitter.emitter".into(),
             supply: driver.supply,
+            input_pole: driver.input_pole(),
             driver,
             emitter,
             division,
             rest,
             tangent,
             at_input,
+            behind_pole,
             intensity,
             warnings,
         }
@@ -273,16 +278,19 @@ impl Model for TransmitHead {
     }
 
     fn transfer(&self, frequency: f64) -> Complex64 {
-        self.division * self.tangent.heated.at(frequency) * self.emitter.carriers().at(frequency)
+        self.division
+            * self.input_pole.at(frequency)
+            * self.tangent.heated.at(frequency)
+            * self.emitter.carriers().at(frequency)
     }
 
     fn noise(&self, frequency: f64) -> Vec<Share> {
-        let by_input =
+        let behind =
             (self.tangent.heated.at(frequency) * self.emitter.carriers().at(frequency)).norm_sqr();
-        let mut shares: Vec<Share> = self
-            .at_input
-            .iter()
-            .map(|c| c.share(frequency, by_input))
+        let by_input = behind * self.input_pole.at(frequency).norm_sqr();
+        let at_input = self.at_input.iter().map(|c| c.share(frequency, by_input));
+        let mut shares: Vec<Share> = at_input
+            .chain(self.behind_pole.iter().map(|c| c.share(frequency, behind)))
             .collect();
         shares.push(
             self.intensity

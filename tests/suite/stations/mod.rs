@@ -6,3 +6,4 @@ mod light_path;
 mod moving_path;
 mod photocell;
 mod phototransistor;
+mod transistor;
