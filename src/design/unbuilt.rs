@@ -4,7 +4,7 @@ use super::error::DesignError;
 use super::section::Section;
 
 /// Kinds, by the section's path without numbers or names.
-const KINDS: [(&str, &str); 16] = [
+const KINDS: [(&str, &str); 10] = [
     ("transmitter.driver", "transistor"),
     ("path", "fibre"),
     ("path", "diffuse"),
@@ -14,13 +14,7 @@ const KINDS: [(&str, &str); 16] = [
     ("receiver.detector", "phototransistor"),
     ("receiver.detector", "photocell"),
     ("transmitter.stage", "transistor"),
-    ("transmitter.stage", "filter"),
-    ("transmitter.stage", "power"),
     ("receiver.stage", "transistor"),
-    ("receiver.stage", "filter"),
-    ("receiver.stage", "power"),
-    ("output", "loudspeaker"),
-    ("output", "headphone"),
 ];
 
 /// Keys.

@@ -9,8 +9,10 @@ use crate::station::Model;
 use crate::station::air::{AirPath, Optics};
 use crate::station::ambient::Lamp;
 use crate::station::coupling::Coupling;
+use crate::station::filter::{ActiveFilter, RcFilter};
 use crate::station::opamp::OpampStage;
 use crate::station::output::Output;
+use crate::station::power::PowerAmplifier;
 use crate::station::receive_head::{Detector, LightAtRest, LoadHead, TransimpedanceHead};
 use crate::station::source::Source;
 use crate::station::transmit_head::TransmitHead;
@@ -83,6 +85,7 @@ pub fn wire(design: &Design) -> Result<Link, DesignError> {
     )?;
     let output = Output::new(&design.output, &drive);
     let output_full_scale = output.full_scale();
+    let sound = output.sound();
     stations.push(Box::new(output));
 
     let mut link = Link {
@@ -90,6 +93,7 @@ pub fn wire(design: &Design) -> Result<Link, DesignError> {
         lamps,
         source_full_scale,
         output_full_scale,
+        sound,
         max_current,
         receiver: receiver_at,
         responsivity,
@@ -124,6 +128,9 @@ fn stage_load(section: &Section, next: &Load) -> Load {
     match section.kind.as_deref() {
         Some("coupling") => Coupling::input_load(section, next),
         Some("trim") => Trim::input_load(section, next),
+        Some("filter") if ActiveFilter::describes(section) => ActiveFilter::input_load(),
+        Some("filter") => RcFilter::input_load(section, next),
+        Some("power") => PowerAmplifier::input_load(),
         _ => OpampStage::input_load(section),
     }
 }
@@ -160,6 +167,21 @@ fn stages(
             }
             Some("trim") => {
                 let stage = Trim::new(section, &drive, next, temperature);
+                drive = stage.drive();
+                stations.push(Box::new(stage));
+            }
+            Some("filter") if ActiveFilter::describes(section) => {
+                let stage = ActiveFilter::new(section, &drive, next);
+                drive = stage.drive();
+                stations.push(Box::new(stage));
+            }
+            Some("filter") => {
+                let stage = RcFilter::new(section, &drive, next, temperature);
+                drive = stage.drive();
+                stations.push(Box::new(stage));
+            }
+            Some("power") => {
+                let stage = PowerAmplifier::new(section, next);
                 drive = stage.drive();
                 stations.push(Box::new(stage));
             }

@@ -3,8 +3,10 @@
 pub mod air;
 pub mod constants;
 pub mod diode;
+pub mod filter;
 pub mod led;
 pub mod noise;
 pub mod opamp;
 pub mod photodiode;
+pub mod sound;
 pub mod sunlight;

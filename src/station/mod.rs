@@ -4,9 +4,11 @@
 pub mod air;
 pub mod ambient;
 pub mod coupling;
+pub mod filter;
 pub mod noise;
 pub mod opamp;
 pub mod output;
+pub mod power;
 pub mod receive_head;
 pub mod source;
 pub mod transmit_head;
