@@ -4,15 +4,13 @@ use super::error::DesignError;
 use super::section::Section;
 
 /// Kinds, by the section's path without numbers or names.
-const KINDS: [(&str, &str); 10] = [
+const KINDS: [(&str, &str); 8] = [
     ("transmitter.driver", "transistor"),
     ("path", "fibre"),
     ("path", "diffuse"),
     ("ambient", "tube-magnetic"),
     ("ambient", "tube-electronic"),
     ("ambient", "pwm-lamp"),
-    ("receiver.detector", "phototransistor"),
-    ("receiver.detector", "photocell"),
     ("transmitter.stage", "transistor"),
     ("receiver.stage", "transistor"),
 ];

@@ -4,7 +4,6 @@ use std::collections::BTreeSet;
 
 use super::Link;
 use crate::design::{Design, DesignError, Section};
-use crate::physics::constants::thermal_voltage;
 use crate::station::Model;
 use crate::station::air::{AirPath, Optics};
 use crate::station::ambient::Lamp;
@@ -13,7 +12,7 @@ use crate::station::filter::{ActiveFilter, RcFilter};
 use crate::station::opamp::OpampStage;
 use crate::station::output::Output;
 use crate::station::power::PowerAmplifier;
-use crate::station::receive_head::{Detector, LightAtRest, LoadHead, TransimpedanceHead};
+use crate::station::receive_head::{LightAtRest, Sensitivity, receive_head};
 use crate::station::source::Source;
 use crate::station::transmit_head::TransmitHead;
 use crate::station::trim::Trim;
@@ -22,7 +21,6 @@ use crate::station::wiring::{Drive, Load};
 /// Compiles `design` into a link.
 pub fn wire(design: &Design) -> Result<Link, DesignError> {
     let t = design.temperature;
-    let vt = thermal_voltage(t);
     let mut stations: Vec<Box<dyn Model>> = Vec::new();
 
     let source = Source::new(&design.source, t);
@@ -42,8 +40,9 @@ pub fn wire(design: &Design) -> Result<Link, DesignError> {
     stations.push(Box::new(head));
 
     let wavelength = design.emitter.number("wavelength");
-    let detector = Detector::new(&design.detector, wavelength, t, vt);
-    let optics = Optics::new(&design.optics, detector.area);
+    let sensitivity = Sensitivity::new(&design.detector, wavelength);
+    let responsivity = sensitivity.responsivity;
+    let optics = Optics::new(&design.optics, sensitivity.area);
     let path = AirPath::new(
         &design.path,
         &design.interruptions,
@@ -57,25 +56,25 @@ pub fn wire(design: &Design) -> Result<Link, DesignError> {
     let lamps = design
         .ambient
         .iter()
-        .map(|section| Lamp::new(section, &optics, detector.responsivity))
+        .map(|section| Lamp::new(section, &optics, responsivity))
         .collect::<Result<Vec<_>, _>>()?;
     let light = LightAtRest {
-        signal: received * detector.responsivity,
+        signal: received * responsivity,
         ambient: lamps.iter().fold(0.0, |sum, lamp| sum + lamp.mean()),
     };
-    let responsivity = detector.responsivity;
     let receiver_at = stations.len();
     let receiver = &design.receiver_stages;
     let next = input_load(receiver, Output::input_load(&design.output));
-    if design.front_end.kind.as_deref() == Some("transimpedance") {
-        let head = TransimpedanceHead::new(&design.front_end, detector, light, &next, t);
-        drive = head.drive();
-        stations.push(Box::new(head));
-    } else {
-        let head = LoadHead::new(&design.front_end, detector, light, &next, t);
-        drive = head.drive();
-        stations.push(Box::new(head));
-    }
+    let (head, offers) = receive_head(
+        &design.front_end,
+        &design.detector,
+        (sensitivity, wavelength),
+        light,
+        &next,
+        t,
+    );
+    drive = offers;
+    stations.push(head);
     drive = stages(
         receiver,
         Output::input_load(&design.output),

@@ -58,7 +58,7 @@ impl Prototype {
                 let mu = (1.0 / epsilon).asinh() / n;
                 Self {
                     poles: on_ellipse(mu.sinh(), mu.cosh()),
-                    gain: if order % 2 == 0 {
+                    gain: if order.is_multiple_of(2) {
                         1.0 / epsilon.hypot(1.0)
                     } else {
                         1.0

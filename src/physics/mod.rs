@@ -7,6 +7,8 @@ pub mod filter;
 pub mod led;
 pub mod noise;
 pub mod opamp;
+pub mod photocell;
 pub mod photodiode;
+pub mod phototransistor;
 pub mod sound;
 pub mod sunlight;

@@ -9,8 +9,9 @@ use thiserror::Error;
 use crate::figures::programme::{LevelMeter, ResidualMeter};
 use crate::link::{Chain, Link, StationEvents};
 use crate::signal::resample::{Downsampler, RatioError, Upsampler};
-use crate::signal::wav::{SampleFormat, WavError, WavReader, WavSpec, WavWriter, same_file};
+use crate::signal::wav::{SampleFormat, WavError, WavReader, WavSpec, WavWriter};
 use crate::station::{Conditions, Curves};
+use crate::whole_file::same_file;
 
 /// What to render, and how.
 #[derive(Debug, Clone)]
@@ -73,6 +74,9 @@ pub struct ChannelOutcome {
 pub struct Outcome {
     pub spec: WavSpec,
     pub frames: u64,
+    /// Change of level at the source, dB; what is said of the sent programme is without it.
+    pub drive: f64,
+    pub cold: bool,
     pub oversample: u32,
     /// Rate that the stations saw, Hz.
     pub link_rate: f64,
@@ -93,6 +97,9 @@ pub fn auto_oversample(rate: u32) -> u32 {
         .find(|n| rate * n >= AUTO_RATE)
         .unwrap_or(8)
 }
+
+/// The stems, in the order they are written.
+pub const STEMS: [&str; 3] = ["clean", "noise", "distortion"];
 
 /// Path of the stem `name` beside `output`: received.wav → received.noise.wav.
 pub fn stem_path(output: &Path, name: &str) -> PathBuf {
@@ -129,7 +136,7 @@ pub fn render(
     };
     let mut paths = vec![job.output.clone()];
     if job.stems {
-        paths.extend(["clean", "noise", "distortion"].map(|s| stem_path(&job.output, s)));
+        paths.extend(STEMS.map(|s| stem_path(&job.output, s)));
     }
     if let Some(path) = paths
         .iter()
@@ -182,6 +189,8 @@ pub fn render(
     Ok(Outcome {
         spec,
         frames: done,
+        drive: job.drive,
+        cold: job.cold,
         oversample: factor,
         link_rate: f64::from(from.rate) * f64::from(factor),
         channels: lanes.into_iter().map(Lane::outcome).collect(),

@@ -74,6 +74,8 @@ pub fn document(findings: &Findings) -> Value {
         "programme": findings.programme.map(|p| json!({
             "frames": p.frames,
             "rate_hz": p.spec.rate,
+            "drive_db": p.drive,
+            "cold": p.cold,
             "oversample": p.oversample,
             "link_rate_hz": p.link_rate,
             "files": p.files.iter().map(|f| f.to_string_lossy()).collect::<Vec<_>>(),
@@ -164,9 +166,9 @@ fn unit_suffix(dimension: Dimension) -> &'static str {
     }
 }
 
-/// JSON has no infinity: a value without bound is null.
+/// JSON has no infinity: a value without bound is null. Nor is there any use in its minus nought.
 fn finite(value: f64) -> Option<f64> {
-    value.is_finite().then_some(value)
+    value.is_finite().then_some(value + 0.0)
 }
 
 fn limit(limit: &Limit) -> Option<Value> {

@@ -118,6 +118,7 @@ impl Lamp {
         self.lines
             .iter()
             .map(|&(f, depth, _)| (f, self.mean * depth))
+            .filter(|(_, amplitude)| *amplitude != 0.0)
     }
 
     /// The lamp in time: photocurrent away from its mean; none where it stands still or is silent.

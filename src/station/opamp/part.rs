@@ -156,8 +156,9 @@ impl OpampPart {
                 (rail, name)
             }
         };
-        let up = pick(high - rest, by_current(1.0), "upper rail");
-        let down = pick(rest - low, by_current(-1.0), "lower rail");
+        // A load may drag an output that is short of current beyond its swing: then there is no room at all that way.
+        let up = pick((high - rest).max(0.0), by_current(1.0), "upper rail");
+        let down = pick((rest - low).max(0.0), by_current(-1.0), "lower rail");
         OutputRest {
             rest,
             excess: asked - rest,

@@ -7,6 +7,8 @@ use crate::station::{Conditions, Curves, Events, Runner};
 
 /// A current below this share of the bias counts as dark.
 const DARK: f64 = 0.01;
+/// A junction's heat beyond its rest goes no further than this, K.
+const RUNAWAY: f64 = 1000.0;
 
 /// Builds the runner of `head`.
 pub fn runner(head: &TransmitHead, conditions: &Conditions) -> Box<dyn Runner> {
@@ -112,10 +114,13 @@ impl Bent {
             let power = current * self.emitter.forward_voltage(current, self.warmth) - flux;
             let forcing = self.heat * (power - self.power);
             let w = &self.weights;
-            self.warmth = w.decay * self.warmth
+            let warmth = w.decay * self.warmth
                 + w.now * forcing
                 + w.last * self.last
                 + w.before * self.before;
+            // A junction that runs away ends somewhere; the model's own range ended long before.
+            let most = self.heating.abs() + RUNAWAY;
+            self.warmth = warmth.clamp(-most, most);
             self.before = self.last;
             self.last = forcing;
         }

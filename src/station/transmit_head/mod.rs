@@ -59,6 +59,8 @@ struct Tangent {
     heated: FirstOrderLaw,
     /// Current against driver volts, S.
     current: f64,
+    /// Whether the junction's heat feeds itself.
+    runs_away: bool,
 }
 
 impl TransmitHead {
@@ -139,6 +141,12 @@ impl TransmitHead {
                 Dimension::Ampere.show(driver.asked_at_rest())
             ));
         }
+        if tangent.runs_away {
+            warnings.push(format!(
+                "{}: the junction runs away: its heat lowers the forward voltage by more than it takes to keep itself up; small-signal figures leave the heat out",
+                emitter_section.path
+            ));
+        }
         if current <= 0.0 {
             warnings.push(format!(
                 "{driver_name}: no current flows at rest; the emitter is dark"
@@ -193,7 +201,9 @@ fn tangent(driver: &Driver, emitter: &Emitter, rest: &Rest) -> Tangent {
     let (resistance, time) = emitter.thermal();
     let direct = flux_by_current * current;
     let slow = flux_by_current * by_heat + flux_by_heat;
-    let heated = if resistance > 0.0 && time > 0.0 {
+    // At a loop gain of 1 and more the heat feeds itself: there is no tangent to settle on.
+    let runs_away = resistance * b >= 1.0;
+    let heated = if resistance > 0.0 && time > 0.0 && !runs_away {
         FirstOrderLaw {
             direct,
             residue: slow * resistance * a / time,
@@ -206,7 +216,11 @@ fn tangent(driver: &Driver, emitter: &Emitter, rest: &Rest) -> Tangent {
             rate: 1.0,
         }
     };
-    Tangent { heated, current }
+    Tangent {
+        heated,
+        current,
+        runs_away,
+    }
 }
 
 impl Model for TransmitHead {

@@ -1,5 +1,8 @@
-//! Stations held against closed forms, reference libraries and independent integrations.
+//! Stations against things outside the project, and their two faces against each other.
 
+mod bench;
 mod filters;
+mod photocell;
+mod phototransistor;
 mod power_and_sound;
 mod workbench;
