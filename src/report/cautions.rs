@@ -72,9 +72,9 @@ fn exposure(what: &str, place: &str, level: f64) -> String {
         "below what the guidance limits".to_owned()
     } else {
         format!(
-            "NIOSH 98-126 (85 dB(A) for 8 h, 3 dB exchange) would allow {} a day, WHO/ITU-T H.870 (80 dB(A) for 40 h) {} a week",
-            duration(occupational_time(level), 24.0),
-            duration(listening_time(level), 168.0)
+            "NIOSH 98-126 (85 dB(A) for 8 h, 3 dB exchange) would allow {}, WHO/ITU-T H.870 (80 dB(A) for 40 h a week) {}",
+            duration(occupational_time(level), 24.0, "day"),
+            duration(listening_time(level), 168.0, "week")
         )
     };
     format!("Sound: {what} is predicted at {level:.1} dB SPL {place}: {times}.")
@@ -83,17 +83,18 @@ fn exposure(what: &str, place: &str, level: f64) -> String {
 /// Level that both publications allow at any time, dB(A): 40 h at 80 dB(A) are a whole week below 73.8 dB(A).
 const HARMLESS: f64 = 73.0;
 
-/// A time, s, in words; no more than `most` hours there are.
-fn duration(seconds: f64, most: f64) -> String {
+/// A time, s, that a `span` of `most` hours may hold, in words.
+fn duration(seconds: f64, most: f64, span: &str) -> String {
     let hours = seconds / 3600.0;
-    match seconds {
-        _ if hours >= most => "all".into(),
+    let time = match seconds {
+        _ if hours >= most => return format!("the whole {span}"),
         s if s >= 36e3 => format!("{hours:.0} h"),
         s if s >= 3600.0 => format!("{hours:.1} h"),
         s if s >= 60.0 => format!("{:.0} min", s / 60.0),
         s if s >= 1.0 => format!("{s:.0} s"),
         _ => "less than 1 s".into(),
-    }
+    };
+    format!("{time} a {span}")
 }
 
 #[cfg(test)]
@@ -109,7 +110,7 @@ mod tests {
             "{text}"
         );
         assert!(exposure("it", "here", 88.0).contains("4.0 h a day"));
-        assert!(exposure("it", "here", 79.0).contains("all a day"));
+        assert!(exposure("it", "here", 79.0).contains("the whole day"));
         assert!(exposure("it", "here", 60.0).contains("below"));
     }
 }

@@ -140,12 +140,12 @@ impl Model for Output {
         }];
         if let Some(sound) = self.sound {
             readings.push(Reading {
-                name: "power of a full-scale sine",
+                name: "full scale power",
                 value: self.full_scale * self.full_scale / (2.0 * sound.impedance),
                 dimension: Dimension::Watt,
             });
             readings.push(Reading {
-                name: "sound level of a full-scale sine",
+                name: "full scale sound level",
                 value: sound.level(self.full_scale / SQRT_2),
                 dimension: Dimension::Decibel,
             });

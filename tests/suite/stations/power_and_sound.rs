@@ -333,7 +333,7 @@ fn levels_are_predicted() {
     let level = |link: &Link, volts: f64| link.sound().unwrap().level(volts);
     assert!((level(&speaker, 2.0) - 90.0103).abs() < 5e-5);
     // A sine of 10 V peak: 6.25 W, 11 dB more.
-    let full = reading(at(&speaker, "output"), "sound level of a full-scale sine");
+    let full = reading(at(&speaker, "output"), "full scale sound level");
     assert!((full - 90.0103 - 10.0 * 12.5f64.log10()).abs() < 5e-5);
     assert!((level(&link_to(HEADPHONE), (1e-3f64 * 32.0).sqrt()) - 100.0).abs() < 1e-9);
     assert!(link_to(LINE).sound().is_none());
