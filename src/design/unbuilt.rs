@@ -4,14 +4,7 @@ use super::error::DesignError;
 use super::section::Section;
 
 /// Kinds, by the section's path without numbers or names.
-const KINDS: [(&str, &str); 6] = [
-    ("transmitter.stage", "filter"),
-    ("transmitter.stage", "power"),
-    ("receiver.stage", "filter"),
-    ("receiver.stage", "power"),
-    ("output", "loudspeaker"),
-    ("output", "headphone"),
-];
+const KINDS: [(&str, &str); 0] = [];
 
 /// Keys.
 const KEYS: [(&str, &str); 3] = [

@@ -7,10 +7,12 @@ use crate::design::{Design, DesignError, Section};
 use crate::station::Model;
 use crate::station::ambient::Lamp;
 use crate::station::coupling::Coupling;
+use crate::station::filter::{ActiveFilter, RcFilter};
 use crate::station::opamp::OpampStage;
 use crate::station::optics::Optics;
 use crate::station::output::Output;
 use crate::station::path::LightPath;
+use crate::station::power::PowerAmplifier;
 use crate::station::receive_head::{LightAtRest, Sensitivity, receive_head};
 use crate::station::source::Source;
 use crate::station::transistor::TransistorStage;
@@ -84,6 +86,7 @@ pub fn wire(design: &Design) -> Result<Link, DesignError> {
     )?;
     let output = Output::new(&design.output, &drive);
     let output_full_scale = output.full_scale();
+    let sound = output.sound();
     stations.push(Box::new(output));
 
     let mut link = Link {
@@ -91,6 +94,7 @@ pub fn wire(design: &Design) -> Result<Link, DesignError> {
         lamps,
         source_full_scale,
         output_full_scale,
+        sound,
         max_current,
         receiver: receiver_at,
         responsivity,
@@ -135,6 +139,9 @@ fn stage_load(section: &Section, next: &Load, temperature: f64) -> Load {
         Some("coupling") => Coupling::input_load(section, next),
         Some("trim") => Trim::input_load(section, next),
         Some("transistor") => TransistorStage::input_load(section, next, temperature),
+        Some("filter") if ActiveFilter::describes(section) => ActiveFilter::input_load(),
+        Some("filter") => RcFilter::input_load(section, next),
+        Some("power") => PowerAmplifier::input_load(),
         _ => OpampStage::input_load(section),
     }
 }
@@ -178,6 +185,21 @@ fn stages(
             }
             Some("transistor") => {
                 let stage = TransistorStage::new(section, &drive, next, temperature);
+                drive = stage.drive();
+                stations.push(Box::new(stage));
+            }
+            Some("filter") if ActiveFilter::describes(section) => {
+                let stage = ActiveFilter::new(section, &drive, next);
+                drive = stage.drive();
+                stations.push(Box::new(stage));
+            }
+            Some("filter") => {
+                let stage = RcFilter::new(section, &drive, next, temperature);
+                drive = stage.drive();
+                stations.push(Box::new(stage));
+            }
+            Some("power") => {
+                let stage = PowerAmplifier::new(section, next);
                 drive = stage.drive();
                 stations.push(Box::new(stage));
             }

@@ -2,7 +2,7 @@
 
 use std::fmt::Write as _;
 
-use super::Findings;
+use super::{Findings, cautions};
 use crate::figures::Figures;
 use crate::link::StationEvents;
 use crate::quantity::Dimension;
@@ -20,6 +20,7 @@ pub fn text(findings: &Findings) -> String {
     operating_lines(&mut out, f);
     budget_lines(&mut out, f);
     requirement_lines(&mut out, f);
+    caution_lines(&mut out, f);
     out
 }
 
@@ -328,5 +329,16 @@ fn requirement_lines(out: &mut String, f: &Findings) {
             if v.met { "met" } else { "NOT MET" },
             &value,
         );
+    }
+}
+
+fn caution_lines(out: &mut String, f: &Findings) {
+    let texts = cautions::texts(f);
+    if texts.is_empty() {
+        return;
+    }
+    heading(out, "Cautions");
+    for text in texts {
+        let _ = writeln!(out, "  {text}");
     }
 }

@@ -6,6 +6,7 @@ pub mod edge;
 pub mod implicit;
 pub mod noise;
 pub mod pole;
+pub mod pole_pair;
 pub mod resample;
 pub mod spectrum;
 pub mod tone;

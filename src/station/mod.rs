@@ -3,11 +3,13 @@
 
 pub mod ambient;
 pub mod coupling;
+pub mod filter;
 pub mod noise;
 pub mod opamp;
 pub mod optics;
 pub mod output;
 pub mod path;
+pub mod power;
 pub mod receive_head;
 pub mod source;
 pub mod transistor;

@@ -109,6 +109,7 @@ pub fn all() -> Vec<Case> {
     };
     let slow = |keys| opamp(keys, "slow-bipolar");
     let large_input = |text: String| format!("{text}input_capacitance = \"200 pF\"\n");
+    let filter = |keys: &str| format!("[[transmitter.stage]]\nkind = \"filter\"\n{keys}");
     vec![
         case("source", source(), "source", 0.1, (-1.0, 1.0), Settled),
         case(
@@ -356,6 +357,128 @@ pub fn all() -> Vec<Case> {
             0.1,
             (-1.0, 1.0),
             Settled,
+        ),
+        case(
+            "low-pass, buffered",
+            stage(&filter(
+                "shape = \"low-pass\"\nfamily = \"bessel\"\norder = 5\ncorner = \"3.4 kHz\"\n",
+            )),
+            first,
+            0.1,
+            (-1.0, 1.0),
+            Settled,
+        ),
+        case(
+            "notch, buffered",
+            stage(&filter(
+                "shape = \"notch\"\nfamily = \"butterworth\"\norder = 2\ncorner = \"150 Hz\"\nwidth = \"90 Hz\"\n",
+            )),
+            first,
+            0.1,
+            (-1.0, 1.0),
+            Settled,
+        ),
+        case(
+            "high-pass, buffered",
+            stage(&filter(
+                "shape = \"high-pass\"\nfamily = \"chebyshev\"\norder = 4\nripple = \"1 dB\"\ncorner = \"100 Hz\"\n",
+            )),
+            first,
+            0.1,
+            (-1.0, 1.0),
+            Never,
+        ),
+        case(
+            "band-pass, buffered",
+            stage(&filter(
+                "shape = \"band-pass\"\nfamily = \"butterworth\"\norder = 3\ncorner = \"1 kHz\"\nwidth = \"2.4 kHz\"\n",
+            )),
+            first,
+            0.1,
+            (-1.0, 1.0),
+            Never,
+        ),
+        case(
+            "emphasis",
+            stage(&filter(
+                "shape = \"emphasis\"\ntime_constant = \"50 µs\"\nsecond_time_constant = \"3 µs\"\n",
+            )),
+            first,
+            0.1,
+            (-1.0, 1.0),
+            Settled,
+        ),
+        case(
+            "low-pass, rc",
+            stage(
+                &(filter(
+                    "shape = \"low-pass\"\nfamily = \"rc\"\nresistor = \"4k7\"\ncapacitor = \"1 nF\"\n",
+                ) + &slow(biased)),
+            ),
+            first,
+            0.1,
+            (-1.0, 1.0),
+            Settled,
+        ),
+        case(
+            "low-pass, rc, before a coupling",
+            stage(
+                &(filter(
+                    "shape = \"low-pass\"\nfamily = \"rc\"\nresistor = \"4k7\"\ncapacitor = \"1 nF\"\n",
+                ) + &coupling("1 µF")
+                    + &slow(biased)),
+            ),
+            first,
+            0.1,
+            (-1.0, 1.0),
+            Never,
+        ),
+        case(
+            "high-pass, rc",
+            stage(
+                &(filter(
+                    "shape = \"high-pass\"\nfamily = \"rc\"\nresistor = \"4k7\"\ncapacitor = \"100 nF\"\n",
+                ) + &large_input(slow(biased))),
+            ),
+            first,
+            0.1,
+            (-1.0, 1.0),
+            Never,
+        ),
+        case(
+            "power amplifier",
+            stage(
+                "[[transmitter.stage]]\nkind = \"power\"\ngain = \"26 dB\"\nsupply = [\"-12 V\", \"12 V\"]\noutput_current = \"1 A\"\ngbw = \"3 MHz\"\nslew = \"8 V/µs\"\nnoise_voltage = \"20 nV/√Hz\"\n",
+            ),
+            first,
+            1e-3,
+            (-1.0, 1.0),
+            Settled,
+        ),
+        case(
+            "power amplifier, class B",
+            stage(
+                "[[transmitter.stage]]\nkind = \"power\"\ngain = \"26 dB\"\nsupply = \"12 V\"\noutput_current = \"1 A\"\ngbw = \"3 MHz\"\nslew = \"8 V/µs\"\ndead_zone = \"1 fV\"\nnoise_voltage = \"20 nV/√Hz\"\n",
+            ),
+            first,
+            1e-3,
+            (-1.0, 1.0),
+            Settled,
+        ),
+        case(
+            "loudspeaker",
+            Draft::ideal()
+                .set("output.kind=loudspeaker")
+                .set("output.impedance=8 Ω")
+                .set("output.resonance=80 Hz")
+                .set("output.quality=0.7")
+                .set("output.voice_coil=5 kHz")
+                .set("output.sensitivity=88 dB")
+                .set("output.distance=1 m"),
+            "output",
+            0.1,
+            (-1.0, 1.0),
+            Never,
         ),
     ]
 }
