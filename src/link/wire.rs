@@ -139,7 +139,7 @@ fn stage_load(section: &Section, next: &Load, temperature: f64) -> Load {
         Some("coupling") => Coupling::input_load(section, next),
         Some("trim") => Trim::input_load(section, next),
         Some("transistor") => TransistorStage::input_load(section, next, temperature),
-        Some("filter") if ActiveFilter::describes(section) => ActiveFilter::input_load(),
+        Some("filter") if ActiveFilter::describes(section) => ActiveFilter::input_load(next),
         Some("filter") => RcFilter::input_load(section, next),
         Some("power") => PowerAmplifier::input_load(),
         _ => OpampStage::input_load(section),

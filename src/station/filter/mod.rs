@@ -40,9 +40,12 @@ impl ActiveFilter {
         section.optional_word("family") != Some("rc")
     }
 
-    /// What it shows to the stage before it.
-    pub fn input_load() -> Load {
-        Load::OPEN
+    /// What it shows to the stage before it: nothing, but for where that would rest without a source of its own, the reference of `next`.
+    pub fn input_load(next: &Load) -> Load {
+        Load {
+            return_voltage: next.return_voltage,
+            ..Load::OPEN
+        }
     }
 
     /// From its section, between `before` and `next`.
