@@ -24,14 +24,11 @@ const KINDS: [(&str, &str); 16] = [
 ];
 
 /// Keys.
-const KEYS: [(&str, &str); 7] = [
-    ("transmitter.driver", "servo"),
-    ("transmitter.emitter", "curve"),
+const KEYS: [(&str, &str); 4] = [
     ("path", "turbulence"),
     ("path", "wind"),
     ("path", "sway"),
     ("path", "sway_bandwidth"),
-    ("receiver.front_end", "ambient_servo"),
 ];
 
 /// Refuses a section that asks for what is not built. A number of 0 asks for nothing.

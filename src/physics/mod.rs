@@ -4,6 +4,7 @@ pub mod air;
 pub mod constants;
 pub mod diode;
 pub mod led;
+pub mod light_curve;
 pub mod noise;
 pub mod opamp;
 pub mod photodiode;

@@ -6,4 +6,5 @@ mod intermodulation;
 mod noise_streams;
 mod quantity;
 mod resampling;
+mod stations;
 mod wav;

@@ -3,6 +3,7 @@
 mod driver;
 mod emitter;
 mod in_time;
+mod servo;
 
 use num_complex::Complex64;
 
@@ -15,6 +16,7 @@ use crate::quantity::Dimension;
 use crate::signal::pole::FirstOrderLaw;
 use driver::Driver;
 use emitter::Emitter;
+use servo::Servo;
 
 /// Driver and emitter on paper.
 ///
@@ -33,6 +35,7 @@ pub struct TransmitHead {
     at_input: Vec<Contributor>,
     /// Relative noise of the light, 1/Hz.
     intensity: Contributor,
+    servo: Option<Servo>,
     supply: f64,
     warnings: Vec<String>,
 }
@@ -105,6 +108,8 @@ impl TransmitHead {
         };
         let tangent = tangent(&driver, &emitter, &rest);
 
+        let servo = Servo::new(driver_section, &driver, &emitter, &rest, &tangent);
+
         let driver_name = &driver_section.path;
         let at_input = driver
             .noisy_resistances(&emitter)
@@ -132,6 +137,16 @@ impl TransmitHead {
                 Dimension::Ampere.show(limit)
             ));
         }
+        if let Some(limit) = emitter.measured_to()
+            && current > limit
+        {
+            warnings.push(format!(
+                "{}: it rests at {}, beyond its curve, which ends at {}",
+                emitter_section.path,
+                Dimension::Ampere.show(current),
+                Dimension::Ampere.show(limit)
+            ));
+        }
         if current < driver.asked_at_rest() * 0.99 {
             warnings.push(format!(
                 "{driver_name}: the supply has too little room for the bias; the emitter rests at {} instead of {}",
@@ -144,6 +159,13 @@ impl TransmitHead {
                 "{driver_name}: no current flows at rest; the emitter is dark"
             ));
         }
+        match &servo {
+            Some(servo) => warnings.extend(servo.warnings()),
+            None if driver_section.given("servo") => warnings.push(format!(
+                "{driver_name}: the servo has no slope of light at rest to compare with and does nothing"
+            )),
+            None => {}
+        }
         Self {
             path: "transmitter.emitter".into(),
             supply: driver.supply,
@@ -154,6 +176,7 @@ impl TransmitHead {
             tangent,
             at_input,
             intensity,
+            servo,
             warnings,
         }
     }
@@ -168,14 +191,37 @@ impl TransmitHead {
         self.emitter.max_current
     }
 
+    /// The current up to which the emitter's light was measured, A, where it is given by a curve.
+    pub fn measured_to(&self) -> Option<f64> {
+        self.emitter.measured_to()
+    }
+
     /// Quasi-static current at a deviation `x` (V) of the voltage before, A.
     pub fn current(&self, x: f64) -> f64 {
-        {
-            let input = self.rest.input + self.division * x;
+        let rest = &self.rest;
+        let current = |volts: f64| {
             self.driver
-                .current(self.rest.input, input, 0.0, self.rest.current)
+                .current(rest.input, rest.input + volts, 0.0, rest.current)
                 .0
-        }
+        };
+        let asked = self.division * x;
+        let flux = |volts| self.emitter.flux(current(volts), rest.heating) - rest.flux;
+        current(
+            self.servo
+                .as_ref()
+                .map_or(asked, |servo| servo.settle(asked, flux)),
+        )
+    }
+
+    /// Whether the junction's heat moves.
+    fn heats(&self) -> bool {
+        let (resistance, time) = self.emitter.thermal();
+        resistance > 0.0 && time > 0.0
+    }
+
+    /// Flux for driver volts at `frequency` (Hz) without the servo, W/V.
+    fn open(&self, frequency: f64) -> Complex64 {
+        self.tangent.heated.at(frequency) * self.emitter.carriers().at(frequency)
     }
 }
 
@@ -215,12 +261,17 @@ impl Model for TransmitHead {
     }
 
     fn title(&self) -> String {
-        format!("{} and LED", self.driver.title())
+        let servo = if self.servo.is_some() {
+            " with a monitor loop"
+        } else {
+            ""
+        };
+        format!("{}{servo} and LED", self.driver.title())
     }
 
     fn operating_point(&self) -> Vec<Reading> {
         let r = &self.rest;
-        vec![
+        let mut readings = vec![
             Reading {
                 name: "bias current",
                 value: r.current,
@@ -251,7 +302,9 @@ impl Model for TransmitHead {
                 value: self.supply * r.current,
                 dimension: Dimension::Watt,
             },
-        ]
+        ];
+        readings.extend(self.servo.iter().flat_map(Servo::readings));
+        readings
     }
 
     fn curve(&self, x: f64) -> f64 {
@@ -259,12 +312,21 @@ impl Model for TransmitHead {
     }
 
     fn transfer(&self, frequency: f64) -> Complex64 {
-        self.division * self.tangent.heated.at(frequency) * self.emitter.carriers().at(frequency)
+        let open = self.open(frequency);
+        let follows = self
+            .servo
+            .as_ref()
+            .map_or(1.0.into(), |s| s.follows(frequency, open));
+        self.division * open * follows
     }
 
     fn noise(&self, frequency: f64) -> Vec<Share> {
-        let by_input =
-            (self.tangent.heated.at(frequency) * self.emitter.carriers().at(frequency)).norm_sqr();
+        let open = self.open(frequency);
+        let left = self
+            .servo
+            .as_ref()
+            .map_or(1.0, |s| s.leaves(frequency, open).norm_sqr());
+        let by_input = open.norm_sqr() * left;
         let mut shares: Vec<Share> = self
             .at_input
             .iter()
@@ -272,7 +334,7 @@ impl Model for TransmitHead {
             .collect();
         shares.push(
             self.intensity
-                .share(frequency, self.rest.flux * self.rest.flux),
+                .share(frequency, self.rest.flux * self.rest.flux * left),
         );
         shares
     }
@@ -289,10 +351,14 @@ impl Model for TransmitHead {
     }
 
     fn slowest_time(&self) -> f64 {
-        if self.tangent.heated.residue == 0.0 {
+        let heat = &self.tangent.heated;
+        if let Some(servo) = &self.servo {
+            return servo.slowest_time(heat);
+        }
+        if heat.residue == 0.0 {
             0.0
         } else {
-            1.0 / self.tangent.heated.rate
+            1.0 / heat.rate
         }
     }
 

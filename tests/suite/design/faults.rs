@@ -104,8 +104,9 @@ const FAULTS: &[Fault] = &[
     fault("path.distance = \"5 %\"", "path.distanse = \"5 %\"", "distanse", "names nothing", "distance"),
     fault("\"0.65 A/W\"]", "\"0.65 A\"]", "\"0.65 A\"", "found a current", "A/W"),
     fault("\"0.65 A/W\"]", "\"0.45 A/W\"]", "[\"0.5 A/W\", \"0.45 A/W\"]", "down to", "smaller value first"),
+    // A curve that no emitter has.
+    fault("count = 2", "curve = [[\"10 mA\", \"2 mW\"], [\"20 mA\", \"1 mW\"]]", "curve = [[\"10 mA\", \"2 mW\"], [\"20 mA\", \"1 mW\"]]", "falls from 2 mW at 10 mA", "one junction temperature"),
     // Not built.
-    fault("sense = \"10 Ω\"", "sense = \"10 Ω\"\nservo = { bandwidth = \"10 kHz\", gain = 10 }", "servo = { bandwidth = \"10 kHz\", gain = 10 }", "transmitter.driver.servo is not built yet", ""),
     fault("off_axis = \"3°\"", "turbulence = \"1e-14 m^-2/3\"\nwind = \"2 m/s\"", "turbulence = \"1e-14 m^-2/3\"", "path.turbulence is not built yet", ""),
     fault("kind = \"incandescent\"", "kind = \"tube-magnetic\"", "kind = \"tube-magnetic\"", "kind tube-magnetic is not built yet", ""),
 ];

@@ -1,0 +1,3 @@
+//! Checks of single stations against things outside the project.
+
+mod servo;
