@@ -184,22 +184,34 @@ fn conclude(
     Ok(ExitCode::from(u8::from(verdicts.iter().any(|v| !v.met))))
 }
 
-/// The warning of an emitter that carried more than it may.
-fn overdriven(link: &Link, programme: Option<&Outcome>, test: &[StationEvents]) -> Option<String> {
+/// The warnings of an emitter that carried more than it may, or than its curve was measured to.
+fn overdriven(link: &Link, programme: Option<&Outcome>, test: &[StationEvents]) -> Vec<String> {
     let rendered = programme
         .iter()
         .flat_map(|p| p.channels.iter().flat_map(|c| &c.events));
     let peak = rendered
         .chain(test)
         .filter_map(|e| e.events.peak)
-        .reduce(f64::max)?;
-    (peak > link.max_current()).then(|| {
+        .fold(0.0, f64::max);
+    [
+        ("above the maximum of", Some(link.max_current())),
+        ("beyond its curve, which ends at", link.measured_to()),
+    ]
+    .into_iter()
+    .filter_map(|(what, limit)| {
+        limit
+            .filter(|&limit| peak > limit)
+            .map(|limit| (what, limit))
+    })
+    .map(|(what, limit)| {
+        let show = |current| Dimension::Ampere.show(current);
         format!(
-            "transmitter.emitter: its current reached {}, above the maximum of {}",
-            Dimension::Ampere.show(peak),
-            Dimension::Ampere.show(link.max_current())
+            "transmitter.emitter: its current reached {}, {what} {}",
+            show(peak),
+            show(limit)
         )
     })
+    .collect()
 }
 
 fn seed(args: &DesignArgs, design: &Design) -> u64 {

@@ -130,6 +130,7 @@ pub(super) fn all(design: &Design) -> Result<(), DesignError> {
             ));
         }
     }
+    light_curve(&design.emitter)?;
     electrical(&design.front_end)?;
     light(design)?;
     measurable(&design.measure)
@@ -222,6 +223,48 @@ fn electrical(section: &Section) -> Result<(), DesignError> {
             message,
             "raise the supply or choose a part that swings closer",
         ));
+    }
+    Ok(())
+}
+
+/// A measured light–current curve that an emitter can follow.
+fn light_curve(emitter: &Section) -> Result<(), DesignError> {
+    let points = emitter.pairs("curve");
+    let fault = |message: String, help: &str| {
+        let message = format!("{}: {message}", emitter.path);
+        Err(emitter.fault(Some("curve"), message, help))
+    };
+    let (amperes, watts) = (
+        |value: f64| format(value, Dimension::Ampere),
+        |value: f64| format(value, Dimension::Watt),
+    );
+    if let Some([_, flux]) = points.iter().find(|p| p[0] == 0.0 && p[1] > 0.0) {
+        return fault(
+            format!("curve gives {} at no current", watts(*flux)),
+            "take the offset of the meter away from every point",
+        );
+    }
+    if let Some([one, next]) = points
+        .windows(2)
+        .filter_map(|pair| <[[f64; 2]; 2]>::try_from(pair).ok())
+        .find(|[one, next]| next[1] < one[1])
+    {
+        return fault(
+            format!(
+                "curve falls from {} at {} to {} at {}",
+                watts(one[1]),
+                amperes(one[0]),
+                watts(next[1]),
+                amperes(next[0])
+            ),
+            "give the light at one junction temperature, with flux_temperature for its fall; the flux may not fall from pair to pair",
+        );
+    }
+    if points.last().is_some_and(|last| last[1] == 0.0) {
+        return fault(
+            "curve has no light in it".into(),
+            "give each current's flux",
+        );
     }
     Ok(())
 }

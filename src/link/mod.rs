@@ -23,6 +23,7 @@ pub struct Link {
     output_full_scale: f64,
     sound: Option<Sound>,
     max_current: f64,
+    measured_to: Option<f64>,
     /// Index of the receive head, and its detector's A/W.
     receiver: usize,
     responsivity: f64,
@@ -67,6 +68,11 @@ impl Link {
     /// Largest current that the emitter may carry, A.
     pub fn max_current(&self) -> f64 {
         self.max_current
+    }
+
+    /// The current up to which the emitter's light–current curve was measured, A, where it is given as one.
+    pub fn measured_to(&self) -> Option<f64> {
+        self.measured_to
     }
 
     /// Small-signal transfer from the source's open-circuit volts to the output's volts at `frequency` (Hz).

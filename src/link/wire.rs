@@ -39,6 +39,7 @@ pub fn wire(design: &Design) -> Result<Link, DesignError> {
 
     let head = TransmitHead::new(&design.driver, &design.emitter, &drive, t);
     let (flux, max_current) = (head.flux(), head.max_current());
+    let measured_to = head.measured_to();
     stations.push(Box::new(head));
 
     let wavelength = design.emitter.number("wavelength");
@@ -96,6 +97,7 @@ pub fn wire(design: &Design) -> Result<Link, DesignError> {
         output_full_scale,
         sound,
         max_current,
+        measured_to,
         receiver: receiver_at,
         responsivity,
         silence: design.silence.clone(),

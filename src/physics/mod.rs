@@ -8,6 +8,7 @@ pub mod fibre;
 pub mod filter;
 pub mod fluorescent;
 pub mod led;
+pub mod light_curve;
 pub mod noise;
 pub mod opamp;
 pub mod photocell;

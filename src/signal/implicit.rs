@@ -23,6 +23,15 @@ pub mod tr_bdf2 {
         now * ((S + 1.0) * (S + 2.0) / 2.0) - last * (S * (S + 2.0))
             + before * (S * (S + 1.0) / 2.0)
     }
+
+    /// As [`midway`], by the cubic through four values: where a loop feels the input's slope, the parabola's error would be 0.26·(ωh)² of it.
+    #[inline]
+    pub fn midway_of_four(now: f64, [last, before, first]: [f64; 3]) -> f64 {
+        const S: f64 = GAMMA - 1.0;
+        now * ((S + 1.0) * (S + 2.0) * (S + 3.0) / 6.0) - last * (S * (S + 2.0) * (S + 3.0) / 2.0)
+            + before * (S * (S + 1.0) * (S + 3.0) / 2.0)
+            - first * (S * (S + 1.0) * (S + 2.0) / 6.0)
+    }
 }
 
 /// Root of a rising function by Newton's method, kept inside the bracket that its own signs have shown.
@@ -115,5 +124,7 @@ mod tests {
         assert!((middle - GAMMA * GAMMA).abs() < 1e-15);
         assert!((MIDDLE * middle + IMPLICIT * 2.0 - 1.0).abs() < 1e-15);
         assert!((midway(1.0, 0.0, 1.0) - (GAMMA - 0.0).powi(2)).abs() < 1e-12);
+        let cube = midway_of_four(1.0, [0.0, -1.0, -8.0]);
+        assert!((cube - GAMMA.powi(3)).abs() < 1e-12);
     }
 }

@@ -177,6 +177,7 @@ pub(super) static FRONT_END: Spec = Spec {
                 number("feedback", Ohm, POSITIVE, "\"100 kΩ\"", "feedback resistor"),
                 number("feedback_capacitor", Farad, NON_NEGATIVE, "\"4.7 pF\"", "across the feedback resistor"),
                 number("ambient_servo", Hertz, POSITIVE, "\"30 Hz\"", "corner of a loop that takes the ambient light's current away").optional(),
+                number("servo_resistor", Ohm, POSITIVE, "\"47 kΩ\"", "through which that loop sends its current; as large as the feedback when absent").optional(),
             ],
             choices: &[],
             class: Some(&OP_AMP),

@@ -2,6 +2,9 @@
 //!
 //! The cathode stands at the inverting input, so that more light raises the output: reference + R_f·I. The loop is of second
 //! order; with one-pole gain A = ω_t/s its transimpedance is R_f/(1 + s(R_f·C_f + 1/ω_t) + s²·R_f·(C_in + C_f)/ω_t) (Graeme 1996).
+//!
+//! An ambient servo is an integrator of the output's deviation from reference + offset, which sends its current through a
+//! resistor into the inverting input: `servo.rs`.
 
 use num_complex::Complex64;
 use std::f64::consts::TAU;
@@ -11,13 +14,15 @@ use super::{LightAtRest, MovingShot};
 use crate::design::Section;
 use crate::physics::noise::{johnson_current, shot};
 use crate::quantity::Dimension;
-use crate::signal::implicit::rising_root;
 use crate::station::noise::{self, Contributor};
 use crate::station::opamp::{OpampPart, OutputRest};
 use crate::station::wiring::{Drive, Load};
 use crate::station::{Conditions, Curves, Limit, Model, Reading, Runner, Share};
 
 mod in_time;
+mod servo;
+
+use servo::{AmbientServo, Quiescent};
 
 /// Detector, amplifier and feedback on paper.
 pub struct TransimpedanceHead {
@@ -29,6 +34,7 @@ pub struct TransimpedanceHead {
     feedback_capacitor: f64,
     light: LightAtRest,
     output: OutputRest,
+    servo: Option<AmbientServo>,
     /// Inverting input at rest, counted from the reference, V.
     input: f64,
     /// Noise currents at the inverting input: the shot noise first.
@@ -48,25 +54,18 @@ impl TransimpedanceHead {
         let part = OpampPart::new(section);
         let feedback = section.number("feedback");
         let bias = section.number("bias");
-        // At rest the loop holds the input at the offset, unless the output cannot follow.
         let drawn = |x: f64| {
             let (i, g) = detector.junction.reverse_current(bias + x);
             (light.total() + i + part.bias_current, g)
         };
-        let asked = part.reference + part.offset + feedback * drawn(part.offset).0;
-        let output = part.rest(asked, 1.0 / feedback, next);
-        let input = if output.stuck() {
-            let held = output.rest - part.reference;
-            rising_root(part.offset, 1e-12, |x| {
-                let (i, g) = drawn(x);
-                (i + (x - held) / feedback, g + 1.0 / feedback)
-            })
-        } else {
-            part.offset
-        };
+        let Quiescent {
+            output,
+            input,
+            servo,
+        } = servo::rest(section, &part, feedback, next, drawn);
         let diode = detector.around(bias + input, false);
         let own = |cause: &str| format!("{}.{cause}", section.path);
-        let currents = vec![
+        let mut currents = vec![
             Contributor::white(
                 format!("{}.shot", detector.path),
                 shot(light.total() + detector.junction.shot_current(bias + input)),
@@ -82,6 +81,12 @@ impl TransimpedanceHead {
             Contributor::white(own("current_noise"), part.current_noise.powi(2))
                 .with_corner(part.current_corner),
         ];
+        currents.extend(servo.iter().map(|s| {
+            Contributor::white(
+                own("ambient_servo"),
+                johnson_current(s.conductance, temperature),
+            )
+        }));
         let voltage = Contributor::white(own("voltage_noise"), part.voltage_noise.powi(2))
             .with_corner(part.voltage_corner);
         Self {
@@ -93,6 +98,7 @@ impl TransimpedanceHead {
             feedback_capacitor: section.number("feedback_capacitor"),
             light,
             output,
+            servo,
             input,
             currents,
             voltage,
@@ -109,12 +115,20 @@ impl TransimpedanceHead {
         self.diode.capacitance + self.part.input_capacitance
     }
 
+    /// Conductance of the ambient servo's resistor, S; 0 without one.
+    fn servo_conductance(&self) -> f64 {
+        self.servo.as_ref().map_or(0.0, |s| s.conductance)
+    }
+
     /// Admittances at `frequency` (Hz): of the input node to ground with the feedback, and of the feedback alone, S.
     fn admittances(&self, frequency: f64) -> (Complex64, Complex64) {
         let s = Complex64::new(0.0, TAU * frequency);
         let feedback = 1.0 / self.feedback + s * self.feedback_capacitor;
         (
-            feedback + self.diode.conductance + s * self.input_capacitance(),
+            feedback
+                + self.servo_conductance()
+                + self.diode.conductance
+                + s * self.input_capacitance(),
             feedback,
         )
     }
@@ -127,7 +141,10 @@ impl TransimpedanceHead {
         let (node, feedback) = self.admittances(frequency);
         // 1/A = s/ω_t.
         let lag = Complex64::new(0.0, frequency / self.part.gain_bandwidth);
-        1.0 / (feedback + lag * node)
+        let integrated = self.servo.as_ref().map_or(0.0.into(), |servo| {
+            Complex64::new(0.0, -servo.corner() / frequency / self.feedback)
+        });
+        1.0 / (feedback + integrated + lag * node)
     }
 
     /// Natural frequency, Hz, and quality of the loop's pole pair; none for an unlimited amplifier.
@@ -138,7 +155,8 @@ impl TransimpedanceHead {
         let quality = 1.0
             / (natural
                 * (self.feedback * self.feedback_capacitor
-                    + (1.0 + self.feedback * self.diode.conductance) / unity));
+                    + (1.0 + self.feedback * (self.diode.conductance + self.servo_conductance()))
+                        / unity));
         (natural.is_finite() && quality.is_finite()).then_some((natural / TAU, quality))
     }
 }
@@ -185,6 +203,7 @@ impl Model for TransimpedanceHead {
                 dimension: Dimension::Farad,
             },
         ];
+        readings.extend(self.servo.iter().flat_map(AmbientServo::readings));
         if let Some((frequency, quality)) = self.resonance() {
             readings.push(Reading {
                 name: "loop frequency",
@@ -232,6 +251,7 @@ impl Model for TransimpedanceHead {
 
     fn warnings(&self) -> Vec<String> {
         let mut warnings: Vec<String> = self.output.warning(&self.path).into_iter().collect();
+        warnings.extend(self.servo.iter().filter_map(|s| s.warning(&self.path)));
         if let Some((frequency, quality)) = self.resonance()
             && quality > 1.4
         {
@@ -245,7 +265,8 @@ impl Model for TransimpedanceHead {
     }
 
     fn slowest_time(&self) -> f64 {
-        self.feedback * self.feedback_capacitor
+        let servo = self.servo.as_ref().map_or(0.0, AmbientServo::time);
+        servo.max(self.feedback * self.feedback_capacitor)
     }
 
     fn runner(&self, conditions: &Conditions) -> Box<dyn Runner> {

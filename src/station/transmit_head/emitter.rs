@@ -4,13 +4,14 @@ use crate::design::Section;
 use crate::physics::constants::photon_voltage;
 use crate::physics::diode::{self, SeriesLoop};
 use crate::physics::led::FluxLaw;
+use crate::physics::light_curve::LightCurve;
 use crate::signal::pole::FirstOrderLaw;
 use std::f64::consts::TAU;
 
 /// One string of equal LEDs. Voltages and fluxes are those of the whole string.
 #[derive(Debug, Clone)]
 pub struct Emitter {
-    law: FluxLaw,
+    law: Light,
     count: f64,
     /// n·V_T of one, V.
     slope_voltage: f64,
@@ -26,16 +27,54 @@ pub struct Emitter {
     drift: f64,
 }
 
+/// Flux of one LED against its current.
+#[derive(Debug, Clone)]
+enum Light {
+    Law(FluxLaw),
+    Measured(LightCurve),
+}
+
+impl Light {
+    /// From `[transmitter.emitter]`, with a current (A) at home on it.
+    fn new(section: &Section) -> (Self, f64) {
+        let points = section.pairs("curve");
+        if !points.is_empty() {
+            let curve = LightCurve::through(points);
+            let last = curve.last_current();
+            return (Self::Measured(curve), last);
+        }
+        let at = section.number("at_current");
+        let law = FluxLaw::through(
+            section.number("flux"),
+            at,
+            section.number("low_current"),
+            section.number("droop_current"),
+        );
+        (Self::Law(law), at)
+    }
+
+    #[inline]
+    fn flux(&self, current: f64) -> f64 {
+        match self {
+            Self::Law(law) => law.flux(current),
+            Self::Measured(curve) => curve.flux(current),
+        }
+    }
+
+    fn slope(&self, current: f64) -> f64 {
+        match self {
+            Self::Law(law) => law.slope(current),
+            Self::Measured(curve) => curve.slope(current),
+        }
+    }
+}
+
 impl Emitter {
     /// From `[transmitter.emitter]`; `vt` the thermal voltage.
     pub fn new(section: &Section, vt: f64, temperature: f64) -> Self {
+        let (law, at_current) = Light::new(section);
         let mut emitter = Self {
-            law: FluxLaw::through(
-                section.number("flux"),
-                section.number("at_current"),
-                section.number("low_current"),
-                section.number("droop_current"),
-            ),
+            law,
             count: section.number("count"),
             slope_voltage: section.number("ideality") * vt,
             saturation: section.number("saturation_current"),
@@ -48,7 +87,7 @@ impl Emitter {
             max_current: section.number("max_current"),
             drift: 0.0,
         };
-        emitter.set_drift(section.number("at_current"), temperature);
+        emitter.set_drift(at_current, temperature);
         emitter
     }
 
@@ -57,6 +96,14 @@ impl Emitter {
         let junction = diode::forward_voltage(current, self.slope_voltage, self.saturation, 0.0);
         self.drift =
             self.count * diode::voltage_drift(junction, self.gap_voltage, temperature).min(0.0);
+    }
+
+    /// The current up to which its light was measured, A, where it was.
+    pub fn measured_to(&self) -> Option<f64> {
+        match &self.law {
+            Light::Law(_) => None,
+            Light::Measured(curve) => Some(curve.last_current()),
+        }
     }
 
     /// Forward voltage against heat, V/K.

@@ -1,6 +1,6 @@
 //! The transmit head in time.
 
-use super::{TransmitHead, driver::Driver, emitter::Emitter};
+use super::{TransmitHead, driver::Driver, emitter::Emitter, servo};
 use crate::signal::pole::{FirstOrder, StepWeights};
 use crate::station::noise::{self, NoiseSource};
 use crate::station::{Conditions, Curves, Events, Runner};
@@ -12,8 +12,10 @@ const RUNAWAY: f64 = 1000.0;
 
 /// Builds the runner of `head`.
 pub fn runner(head: &TransmitHead, conditions: &Conditions) -> Box<dyn Runner> {
-    let (resistance, time) = head.emitter.thermal();
-    let heats = resistance > 0.0 && time > 0.0;
+    if let Some(servo) = &head.servo {
+        return servo::in_time::runner(servo, head, conditions);
+    }
+    let heats = head.heats();
     let mut carriers = head.emitter.carriers().section(conditions.rate);
     if conditions.cold {
         carriers.start_output(-head.rest.flux);
@@ -45,19 +47,7 @@ pub fn runner(head: &TransmitHead, conditions: &Conditions) -> Box<dyn Runner> {
                 near: head.rest.current,
                 flux: head.rest.flux,
                 heating: head.rest.heating,
-                warmth: if conditions.cold && heats {
-                    -head.rest.heating
-                } else {
-                    0.0
-                },
-                heat: if heats { resistance / time } else { 0.0 },
-                power: head.rest.forward_voltage * head.rest.current - head.rest.flux,
-                weights: StepWeights::new(
-                    if heats { 1.0 / time } else { 0.0 },
-                    1.0 / conditions.rate,
-                ),
-                last: 0.0,
-                before: 0.0,
+                junction: Junction::new(head, conditions),
             })),
         },
         events: Events::default(),
@@ -91,31 +81,49 @@ struct Bent {
     near: f64,
     flux: f64,
     heating: f64,
-    /// Heat of the junction beyond its rest, K.
-    warmth: f64,
+    junction: Junction,
+}
+
+/// The junction's heat in time.
+pub(super) struct Junction {
+    /// Heat beyond its rest, K.
+    pub warmth: f64,
     /// R_th/τ, K/(W·s).
     heat: f64,
     /// Dissipated power at rest, W.
     power: f64,
+    /// Furthest that the heat goes either way, K.
+    most: f64,
     weights: StepWeights,
     last: f64,
     before: f64,
 }
 
-impl Bent {
-    /// Flux away from rest, W, for driver volts `v` away from rest. The junction's heat is that at the sample's start: it
-    /// moves in milliseconds and more.
+impl Junction {
+    pub fn new(head: &TransmitHead, conditions: &Conditions) -> Self {
+        let (resistance, time) = head.emitter.thermal();
+        let heats = head.heats();
+        let pick = |value| if heats { value } else { 0.0 };
+        Self {
+            warmth: pick(if conditions.cold {
+                -head.rest.heating
+            } else {
+                0.0
+            }),
+            heat: pick(resistance / time),
+            power: head.rest.forward_voltage * head.rest.current - head.rest.flux,
+            most: head.rest.heating.abs() + RUNAWAY,
+            weights: StepWeights::new(pick(1.0 / time), 1.0 / conditions.rate),
+            last: 0.0,
+            before: 0.0,
+        }
+    }
+
+    /// One sample on, under `current` (A) and the `flux` (W) that leaves.
     #[inline]
-    fn step(&mut self, v: f64, events: &mut Events) -> f64 {
-        let drift = self.emitter.drift();
-        let heat_voltage = drift * self.warmth;
-        let (current, limited) =
-            self.driver
-                .current(self.input, self.input + v, heat_voltage, self.near);
-        self.near = current;
-        let flux = self.emitter.flux(current, self.heating + self.warmth);
+    pub fn advance(&mut self, emitter: &Emitter, current: f64, flux: f64) {
         if self.heat > 0.0 {
-            let power = current * self.emitter.forward_voltage(current, self.warmth) - flux;
+            let power = current * emitter.forward_voltage(current, self.warmth) - flux;
             let forcing = self.heat * (power - self.power);
             let w = &self.weights;
             let warmth = w.decay * self.warmth
@@ -123,16 +131,37 @@ impl Bent {
                 + w.last * self.last
                 + w.before * self.before;
             // A junction that runs away ends somewhere; the model's own range ended long before.
-            let most = self.heating.abs() + RUNAWAY;
-            self.warmth = warmth.clamp(-most, most);
+            self.warmth = warmth.clamp(-self.most, self.most);
             self.before = self.last;
             self.last = forcing;
         }
-        events.cut_off += u64::from(current < DARK * self.current);
-        events.clipped += u64::from(limited);
-        events.peak = Some(events.peak.map_or(current, |p| p.max(current)));
+    }
+}
+
+impl Bent {
+    /// Flux away from rest, W, for driver volts `v` away from rest. The junction's heat is that at the sample's start: it
+    /// moves in milliseconds and more.
+    #[inline]
+    fn step(&mut self, v: f64, events: &mut Events) -> f64 {
+        let warmth = self.junction.warmth;
+        let heat_voltage = self.emitter.drift() * warmth;
+        let (current, limited) =
+            self.driver
+                .current(self.input, self.input + v, heat_voltage, self.near);
+        self.near = current;
+        let flux = self.emitter.flux(current, self.heating + warmth);
+        self.junction.advance(&self.emitter, current, flux);
+        count(events, current, self.current, limited);
         flux - self.flux
     }
+}
+
+/// Counts a sample at `current` (A), all that the supply allows or not, of an emitter that rests at `rest` (A).
+#[inline]
+pub(super) fn count(events: &mut Events, current: f64, rest: f64, limited: bool) {
+    events.cut_off += u64::from(current < DARK * rest);
+    events.clipped += u64::from(limited);
+    events.peak = Some(events.peak.map_or(current, |p| p.max(current)));
 }
 
 impl Runner for HeadRunner {

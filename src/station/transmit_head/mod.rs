@@ -3,6 +3,7 @@
 mod driver;
 mod emitter;
 mod in_time;
+mod servo;
 
 use num_complex::Complex64;
 
@@ -15,6 +16,7 @@ use crate::quantity::Dimension;
 use crate::signal::pole::FirstOrderLaw;
 use driver::Driver;
 use emitter::Emitter;
+use servo::Servo;
 
 /// Driver and emitter on paper.
 ///
@@ -36,6 +38,7 @@ pub struct TransmitHead {
     behind_pole: Vec<Contributor>,
     /// Relative noise of the light, 1/Hz.
     intensity: Contributor,
+    servo: Option<Servo>,
     supply: f64,
     warnings: Vec<String>,
 }
@@ -108,6 +111,8 @@ impl TransmitHead {
         };
         let tangent = tangent(&driver, &emitter, &rest);
 
+        let servo = Servo::new(driver_section, &driver, &emitter, &rest, &tangent);
+
         let driver_name = &driver_section.path;
         let [outer, behind_pole] = driver.noises();
         let at_input = driver
@@ -137,6 +142,16 @@ impl TransmitHead {
                 Dimension::Ampere.show(limit)
             ));
         }
+        if let Some(limit) = emitter.measured_to()
+            && current > limit
+        {
+            warnings.push(format!(
+                "{}: it rests at {}, beyond its curve, which ends at {}",
+                emitter_section.path,
+                Dimension::Ampere.show(current),
+                Dimension::Ampere.show(limit)
+            ));
+        }
         if current < driver.asked_at_rest() * 0.99 {
             warnings.push(format!(
                 "{driver_name}: the supply has too little room for the bias; the emitter rests at {} instead of {}",
@@ -155,6 +170,13 @@ impl TransmitHead {
                 "{driver_name}: no current flows at rest; the emitter is dark"
             ));
         }
+        match &servo {
+            Some(servo) => warnings.extend(servo.warnings()),
+            None if driver_section.given("servo") => warnings.push(format!(
+                "{driver_name}: the servo has no slope of light at rest to compare with and does nothing"
+            )),
+            None => {}
+        }
         Self {
             path: "transmitter.emitter".into(),
             supply: driver.supply,
@@ -167,6 +189,7 @@ impl TransmitHead {
             at_input,
             behind_pole,
             intensity,
+            servo,
             warnings,
         }
     }
@@ -181,14 +204,37 @@ impl TransmitHead {
         self.emitter.max_current
     }
 
+    /// The current up to which the emitter's light was measured, A, where it is given by a curve.
+    pub fn measured_to(&self) -> Option<f64> {
+        self.emitter.measured_to()
+    }
+
     /// Quasi-static current at a deviation `x` (V) of the voltage before, A.
     pub fn current(&self, x: f64) -> f64 {
-        {
-            let input = self.rest.input + self.division * x;
+        let rest = &self.rest;
+        let current = |volts: f64| {
             self.driver
-                .current(self.rest.input, input, 0.0, self.rest.current)
+                .current(rest.input, rest.input + volts, 0.0, rest.current)
                 .0
-        }
+        };
+        let asked = self.division * x;
+        let flux = |volts| self.emitter.flux(current(volts), rest.heating) - rest.flux;
+        current(
+            self.servo
+                .as_ref()
+                .map_or(asked, |servo| servo.settle(asked, flux)),
+        )
+    }
+
+    /// Whether the junction's heat moves.
+    fn heats(&self) -> bool {
+        let (resistance, time) = self.emitter.thermal();
+        resistance > 0.0 && time > 0.0
+    }
+
+    /// Flux for driver volts at `frequency` (Hz) without the servo, W/V.
+    fn open(&self, frequency: f64) -> Complex64 {
+        self.tangent.heated.at(frequency) * self.emitter.carriers().at(frequency)
     }
 }
 
@@ -234,12 +280,17 @@ impl Model for TransmitHead {
     }
 
     fn title(&self) -> String {
-        format!("{} and LED", self.driver.title())
+        let servo = if self.servo.is_some() {
+            " with a monitor loop"
+        } else {
+            ""
+        };
+        format!("{}{servo} and LED", self.driver.title())
     }
 
     fn operating_point(&self) -> Vec<Reading> {
         let r = &self.rest;
-        vec![
+        let mut readings = vec![
             Reading {
                 name: "bias current",
                 value: r.current,
@@ -270,7 +321,9 @@ impl Model for TransmitHead {
                 value: self.supply * r.current,
                 dimension: Dimension::Watt,
             },
-        ]
+        ];
+        readings.extend(self.servo.iter().flat_map(Servo::readings));
+        readings
     }
 
     fn curve(&self, x: f64) -> f64 {
@@ -278,15 +331,21 @@ impl Model for TransmitHead {
     }
 
     fn transfer(&self, frequency: f64) -> Complex64 {
-        self.division
-            * self.input_pole.at(frequency)
-            * self.tangent.heated.at(frequency)
-            * self.emitter.carriers().at(frequency)
+        let open = self.open(frequency);
+        let follows = self
+            .servo
+            .as_ref()
+            .map_or(1.0.into(), |s| s.follows(frequency, open));
+        self.division * self.input_pole.at(frequency) * open * follows
     }
 
     fn noise(&self, frequency: f64) -> Vec<Share> {
-        let behind =
-            (self.tangent.heated.at(frequency) * self.emitter.carriers().at(frequency)).norm_sqr();
+        let open = self.open(frequency);
+        let left = self
+            .servo
+            .as_ref()
+            .map_or(1.0, |s| s.leaves(frequency, open).norm_sqr());
+        let behind = open.norm_sqr() * left;
         let by_input = behind * self.input_pole.at(frequency).norm_sqr();
         let at_input = self.at_input.iter().map(|c| c.share(frequency, by_input));
         let mut shares: Vec<Share> = at_input
@@ -294,7 +353,7 @@ impl Model for TransmitHead {
             .collect();
         shares.push(
             self.intensity
-                .share(frequency, self.rest.flux * self.rest.flux),
+                .share(frequency, self.rest.flux * self.rest.flux * left),
         );
         shares
     }
@@ -311,10 +370,14 @@ impl Model for TransmitHead {
     }
 
     fn slowest_time(&self) -> f64 {
-        if self.tangent.heated.residue == 0.0 {
+        let heat = &self.tangent.heated;
+        if let Some(servo) = &self.servo {
+            return servo.slowest_time(heat);
+        }
+        if heat.residue == 0.0 {
             0.0
         } else {
-            1.0 / self.tangent.heated.rate
+            1.0 / heat.rate
         }
     }
 

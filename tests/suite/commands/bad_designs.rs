@@ -154,20 +154,6 @@ fn a_missing_key() {
 }
 
 #[test]
-fn kinds_that_cannot_be_run() {
-    let fibre = "kind = \"fibre\"\nlength = \"20 m\"\nattenuation = \"0.2 dB/m\"\ncore = \"1 mm\"\naperture = 0.5\nconnectors = 2\nconnector_loss = \"1 dB\"";
-    let text = STRAIGHT.replace("kind = \"air\"\ndistance = \"1 m\"", fibre);
-    let folder = Folder::new();
-    folder.write("fibre.toml", text);
-    // Once fibre is built this test holds nothing any more: it then goes to the kinds that are not.
-    folder.refuses(
-        2,
-        &["measure", "fibre.toml"],
-        &["fibre", "not built yet", "fibre.toml:"],
-    );
-}
-
-#[test]
 fn a_missing_section() {
     let folder = Folder::new();
     for section in [

@@ -8,5 +8,6 @@ mod moving_path;
 mod photocell;
 mod phototransistor;
 mod power_and_sound;
+mod servo;
 mod transistor;
 mod workbench;

@@ -2,10 +2,12 @@
 //!
 //! Two states in deviations from rest: the charge of the inverting input, q = Q(x) + C_f·(x − y), q' = −(i + (x − y)/R_f), and
 //! the output, y' = S(e − x) held between its limits. Both stages of the TR-BDF2 rule come down to one rising equation in x.
+//! An ambient servo adds its own state z, z' = ω·y held between its limits, and the current (z − x)/R into the input.
 
 use std::f64::consts::TAU;
 
-use super::{AroundRest, Conditions, Curves, MovingShot, TransimpedanceHead, noise};
+use super::servo::Integrator;
+use super::{AmbientServo, AroundRest, Conditions, Curves, MovingShot, TransimpedanceHead, noise};
 use crate::physics::opamp::SlopeLaw;
 use crate::signal::implicit::{rising_root, tr_bdf2};
 use crate::station::noise::NoiseSource;
@@ -48,6 +50,11 @@ pub fn runner(head: &TransimpedanceHead, conditions: &Conditions) -> Box<dyn Run
         } else {
             head.part.offset - head.input
         },
+        servo: match &head.servo {
+            Some(servo) if straight => servo.straight(),
+            Some(servo) => servo.bent(),
+            None => Integrator::default(),
+        },
         low,
         high,
         k: tr_bdf2::IMPLICIT / conditions.rate,
@@ -58,6 +65,7 @@ pub fn runner(head: &TransimpedanceHead, conditions: &Conditions) -> Box<dyn Run
     if conditions.cold {
         amplifier.now.output = -(head.output.rest).clamp(low, high);
         amplifier.now.charge = -amplifier.feedback_capacitor * amplifier.now.output;
+        amplifier.now.servo = head.servo.as_ref().map_or(0.0, AmbientServo::discharged);
     }
     Box::new(TransimpedanceRunner {
         responsivity: head.detector.responsivity,
@@ -119,6 +127,7 @@ struct Loop {
     /// S
     feedback: f64,
     push: f64,
+    servo: Integrator,
     low: f64,
     high: f64,
     /// Weight of the implicit stages, s.
@@ -138,15 +147,32 @@ struct State {
     flow: f64,
     /// dy/dt, V/s.
     slope: f64,
+    /// The ambient servo's output, V, and its slope, V/s.
+    servo: f64,
+    servo_slope: f64,
+}
+
+/// What an implicit stage starts from.
+#[derive(Clone, Copy)]
+struct Known {
+    charge: f64,
+    output: f64,
+    servo: f64,
 }
 
 impl Loop {
-    /// One implicit stage from the known parts of charge and output, under light `i` (A) and noise `e` (V).
+    /// One implicit stage from the known parts of charge, output and servo, under light `i` (A) and noise `e` (V).
     #[inline]
-    fn solve(&self, charge: f64, output: f64, i: f64, e: f64, start: f64) -> State {
+    fn solve(&self, known: Known, i: f64, e: f64, start: f64) -> State {
+        let Known {
+            charge,
+            output,
+            servo,
+        } = known;
         let k = self.k;
+        let integrator = &self.servo;
         let mut state = State::default();
-        let mut slopes = (0.0, 0.0, 0.0);
+        let mut slopes = (0.0, 0.0, 0.0, 0.0);
         let x = rising_root(start, 1e-9, |x| {
             let u = self.push + e - x;
             let (bend, bent) = self.law.bend(u);
@@ -160,17 +186,33 @@ impl Loop {
             } else {
                 (0.0, 0.0)
             };
+            let rise = integrator.rate * (y + integrator.push);
+            let asked = servo + k * rise;
+            let z = asked.clamp(integrator.low, integrator.high);
+            let (servo_slope, adds) = if z == asked {
+                (rise, k * integrator.rate * follows)
+            } else {
+                (0.0, 0.0)
+            };
             state = State {
                 input: x,
                 output: y,
                 charge: diode.charge + self.capacitance * x + self.feedback_capacitor * (x - y),
-                flow: -(i + diode.current + (x - y) * self.feedback),
+                flow: -(i
+                    + diode.current
+                    + (x - y) * self.feedback
+                    + (x - z) * integrator.conductance),
                 slope,
+                servo: z,
+                servo_slope,
             };
             slopes = (
                 diode.capacitance + self.capacitance + self.feedback_capacitor * (1.0 - follows),
-                diode.conductance + (1.0 - follows) * self.feedback,
+                diode.conductance
+                    + (1.0 - follows) * self.feedback
+                    + (1.0 - adds) * integrator.conductance,
                 follows,
+                adds,
             );
             (
                 state.charge - k * state.flow - charge,
@@ -185,6 +227,8 @@ impl Loop {
             charge: state.charge + slopes.0 * step,
             flow: state.flow - slopes.1 * step,
             slope: state.slope + slopes.2 / k * step,
+            servo: state.servo + slopes.3 * step,
+            servo_slope: state.servo_slope + slopes.3 / k * step,
         }
     }
 
@@ -197,15 +241,22 @@ impl Loop {
         );
         let was = self.now;
         let middle = self.solve(
-            was.charge + self.k * was.flow,
-            was.output + self.k * was.slope,
+            Known {
+                charge: was.charge + self.k * was.flow,
+                output: was.output + self.k * was.slope,
+                servo: was.servo + self.k * was.servo_slope,
+            },
             i,
             e,
             was.input,
         );
+        let blend = |middle: f64, was: f64| tr_bdf2::MIDDLE * middle + tr_bdf2::FIRST * was;
         let end = self.solve(
-            tr_bdf2::MIDDLE * middle.charge + tr_bdf2::FIRST * was.charge,
-            tr_bdf2::MIDDLE * middle.output + tr_bdf2::FIRST * was.output,
+            Known {
+                charge: blend(middle.charge, was.charge),
+                output: blend(middle.output, was.output),
+                servo: blend(middle.servo, was.servo),
+            },
             light,
             voltage,
             middle.input,
