@@ -105,19 +105,24 @@ impl Runner for StageRunner {
                 age,
                 shift,
             } => {
+                // Copies, that the compiler may keep in registers.
+                let (held, mut at, mut charge, mut output) = (*law, *near, *shift, self.output);
+                let least = self.least;
+                let mut limited = 0;
                 for (x, drawn) in block.iter_mut().zip(&self.currents) {
                     *age += 1;
                     if *age == RENEWAL {
                         *age = 0;
-                        near.renew();
+                        at.renew();
                     }
-                    let k = self.output.open(*drawn);
-                    *near = law.solve(shift.loop_voltage(*x), k, z, near);
-                    shift.settle(law.base_rest * (near.drive - 1.0));
-                    let limited = near.region != Region::Active || near.collector < self.least;
-                    self.events.clipped += u64::from(limited);
-                    *x = self.output.settle(k - z * near.collector);
+                    let k = output.open(*drawn);
+                    at = held.solve(charge.loop_voltage(*x), k, z, &at);
+                    charge.settle(held.base_rest * (at.drive - 1.0));
+                    limited += u64::from(at.region != Region::Active || at.collector < least);
+                    *x = output.settle(k - z * at.collector);
                 }
+                (*near, *shift, self.output) = (at, charge, output);
+                self.events.clipped += limited;
             }
         }
         self.lag.run(block);
@@ -129,6 +134,7 @@ impl Runner for StageRunner {
 }
 
 /// The bias shift q: q' = −leak·q + stiffness·(tangent's base current − base current).
+#[derive(Clone, Copy)]
 struct Shift {
     /// With the stiffness in them, Ω.
     weights: StepWeights,
@@ -192,6 +198,7 @@ impl Shift {
 }
 
 /// What hangs on the collector.
+#[derive(Clone, Copy)]
 struct Output {
     /// Ω, of this sample.
     impedance: f64,

@@ -177,8 +177,8 @@ fn two_stages_make_ten_thousand() {
     assert!((ratio - 1.0).norm() < 2e-3, "{ratio}");
 }
 
-/// A bent base current charges the capacitor before it: at 60 mV behind a large divider the collector's mean stays at its rest,
-/// where a stiff base would let it rise by I₀(x) (2.0 of its rest).
+/// A bent base current charges the capacitor before it: under two V_T and a divider of infinite resistance the collector's mean
+/// stays at its rest, where a stiff base would lift it to I₀(2) = 2.28 of that.
 #[test]
 fn the_mean_base_current_stays_where_the_divider_holds_it() {
     let keys = "supply = \"9 V\"\nbias = \"1 mA\"\ncollector_resistor = \"100 Ω\"\nemitter_resistor = 0\nbypassed = 0\n";

@@ -74,7 +74,7 @@ fn resistance_straightens_the_base() {
 }
 
 /// What a stage hears through a coupling capacitor is the node under its own small-signal load; the source's resistance has to
-/// come back out of it. A source of 100 kΩ drives 10 µA peak into a base that rests at 5 µA·200: the collector follows the current.
+/// come back out of it. Behind 1 MΩ the collector follows the current, though the base's voltage bends.
 #[test]
 fn a_current_drives_straight() {
     let keys = "supply = \"9 V\"\nbias = \"2 mA\"\ncollector_resistor = \"100 Ω\"\nemitter_resistor = 0\nbypassed = 0\n";
@@ -90,7 +90,7 @@ fn a_current_drives_straight() {
     near(h[0], 100.0 * 200.0 * 5e-6, 6e-3);
     let (r_base, r_pi) = (1e6, V_T / 10e-6);
     let loop_share = r_pi / (r_base + r_pi);
-    // HD2 of the residual exponential: u/4 of the current's modulation times r_π's share of the loop.
+    // HD2 of what is left: a quarter of the modulation times r_π's share of the loop, to first order in a modulation of a half.
     near(h[1] / h[0], 0.5 * loop_share / 4.0, 0.2);
     // The same node voltage taken for a stiff source would distort as exp(0.5) does and worse.
     assert!(h[1] / h[0] < 1e-3);
