@@ -16,7 +16,17 @@ use harklight::signal::resample::{Downsampler, Upsampler};
 use harklight::station::ambient::Flicker;
 use harklight::station::{Conditions, Curves};
 
-const DESIGNS: [&str; 2] = ["dome-talkback", "dome-talkback-hurried"];
+/// Between them they hold every kind of station.
+const DESIGNS: [&str; 8] = [
+    "dome-talkback",
+    "dome-talkback-hurried",
+    "shielded-room-intercom",
+    "reading-room-assist",
+    "jetty-voice-link",
+    "weld-cell-fibre",
+    "field-photocell",
+    "gallery-lamp-guide",
+];
 /// Samples that a chain takes through its stations at a time.
 const SLICE: usize = 512;
 
