@@ -1,7 +1,7 @@
 //! Harklight runs real audio through the paper design of an analogue audio link carried by light.
 //!
 //! The modules are floors: each imports only from those listed below it.
-//! `cli` > `report` > `study` > `render` > `figures` > `link` > `station` > `design` > `signal`, `physics` > `quantity`.
+//! `cli` > `report` > `study` > `render` > `figures` > `link` > `station` > `design` > `signal`, `physics` > `quantity`, `whole_file`.
 
 pub mod cli;
 pub mod design;
@@ -14,3 +14,4 @@ pub mod report;
 pub mod signal;
 pub mod station;
 pub mod study;
+pub mod whole_file;

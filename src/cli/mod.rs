@@ -2,14 +2,17 @@
 
 pub mod measure;
 pub mod new;
+mod outputs;
 pub mod parts;
 mod reference;
 pub mod render;
 
-use std::io::{ErrorKind, Write};
 use std::process::ExitCode;
 
 use clap::{Args, Parser, Subcommand};
+use textwrap::WordSplitter;
+
+use outputs::{FiguresFile, print, say};
 
 use crate::design::{Design, DesignError};
 use crate::link::{Link, StationEvents, budget};
@@ -44,7 +47,7 @@ pub struct DesignArgs {
     #[arg(long = "set", value_name = "PATH=VALUE")]
     sets: Vec<String>,
     /// Seed of all noises (default: the design's, else 1)
-    #[arg(long)]
+    #[arg(long, value_name = "N", allow_negative_numbers = true)]
     seed: Option<u64>,
     /// Print the whole result as one JSON document
     #[arg(long)]
@@ -79,8 +82,18 @@ impl From<RenderError> for Failure {
     }
 }
 
+/// Errors as they are shown: names of parts are not broken at their hyphens.
+fn show_errors_whole() {
+    // It fails only where a hook is set already, which then shows them.
+    let _ = miette::set_hook(Box::new(|_| {
+        let options = miette::MietteHandlerOpts::new();
+        Box::new(options.word_splitter(WordSplitter::NoHyphenation).build())
+    }));
+}
+
 /// Runs the command line of this process.
 pub fn main() -> ExitCode {
+    show_errors_whole();
     let cli = match Cli::try_parse() {
         Ok(cli) => cli,
         Err(e) => {
@@ -98,11 +111,11 @@ pub fn main() -> ExitCode {
     match done {
         Ok(code) => code,
         Err(Failure::Input(report)) => {
-            eprintln!("{report:?}");
+            say(&format!("{report:?}\n"));
             ExitCode::from(2)
         }
         Err(Failure::Machine(report)) => {
-            eprintln!("{report:?}");
+            say(&format!("{report:?}\n"));
             ExitCode::from(3)
         }
     }
@@ -110,13 +123,13 @@ pub fn main() -> ExitCode {
 
 /// Measures the link, says what was found, and judges the limits.
 ///
-/// The text goes to standard output, or to standard error where that carries audio; `figures` is a file for the JSON document.
+/// The text goes to standard output, or to standard error where that carries audio; `figures` takes the JSON document.
 fn conclude(
     args: &DesignArgs,
     design: &Design,
     link: &Link,
     programme: Option<&Outcome>,
-    figures: Option<&std::path::Path>,
+    figures: Option<FiguresFile>,
     audio_on_stdout: bool,
 ) -> Result<ExitCode, Failure> {
     let seed = seed(args, design);
@@ -147,25 +160,25 @@ fn conclude(
         programme,
     };
     for warning in &warnings {
-        eprintln!("warning: {warning}");
+        say(&format!("warning: {warning}\n"));
     }
     if figures.is_some() || args.json {
         let mut document =
             serde_json::to_string_pretty(&json::document(&findings)).unwrap_or_default();
         document.push('\n');
-        if let Some(path) = figures {
-            write_whole(path, document.as_bytes())?;
+        if let Some(file) = figures {
+            file.finish(&document)?;
         }
         if args.json {
-            print(&document);
+            print(&document)?;
         }
     }
     if !args.json {
         let text = terminal::text(&findings);
         if audio_on_stdout {
-            eprint!("{text}");
+            say(&text);
         } else {
-            print(&text);
+            print(&text)?;
         }
     }
     Ok(ExitCode::from(u8::from(verdicts.iter().any(|v| !v.met))))
@@ -203,36 +216,4 @@ fn overdriven(link: &Link, programme: Option<&Outcome>, test: &[StationEvents]) 
 
 fn seed(args: &DesignArgs, design: &Design) -> u64 {
     args.seed.or(design.seed).unwrap_or(1)
-}
-
-/// Prints to standard output; a reader that has gone is no fault of ours.
-fn print(text: &str) {
-    let mut out = std::io::stdout().lock();
-    if let Err(e) = out.write_all(text.as_bytes()).and_then(|()| out.flush())
-        && e.kind() != ErrorKind::BrokenPipe
-    {
-        eprintln!("standard output: {e}");
-    }
-}
-
-/// Writes a file that appears whole or not at all.
-fn write_whole(path: &std::path::Path, bytes: &[u8]) -> Result<(), Failure> {
-    let folder = path
-        .parent()
-        .filter(|p| !p.as_os_str().is_empty())
-        .unwrap_or(std::path::Path::new("."));
-    let written = tempfile::NamedTempFile::new_in(folder).and_then(|mut file| {
-        file.write_all(bytes)?;
-        file.as_file().sync_all()?;
-        file.persist(path).map_err(|e| e.error)?;
-        Ok(())
-    });
-    written.map_err(|e| {
-        let report = miette::miette!("`{}` could not be written: {e}", path.display());
-        if e.kind() == ErrorKind::NotFound {
-            Failure::Input(report)
-        } else {
-            Failure::Machine(report)
-        }
-    })
 }

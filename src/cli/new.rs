@@ -1,10 +1,12 @@
 //! `harklight new`: a commented starter design.
 
-use std::io::Write;
+use std::io::{ErrorKind, Write};
 use std::path::{Path, PathBuf};
 use std::process::ExitCode;
 
 use miette::miette;
+
+use crate::whole_file::{Refusal, WholeFile};
 
 const STARTER: &str = include_str!("../../configs/starter.toml");
 const STARTER_TITLE: &str = "title = \"Starter link\"";
@@ -25,13 +27,6 @@ pub struct Args {
 /// A name that is no file name, a file that exists (without `--force`), a folder that cannot be written.
 pub fn run(args: &Args) -> Result<ExitCode, miette::Report> {
     let path = toml_path(&args.name)?;
-    if path.is_dir() {
-        return Err(miette!(
-            help = "choose another name",
-            "{} is a folder",
-            path.display()
-        ));
-    }
     let title = path
         .file_stem()
         .unwrap_or_default()
@@ -41,52 +36,38 @@ pub fn run(args: &Args) -> Result<ExitCode, miette::Report> {
         STARTER_TITLE,
         &format!("title = {}", toml::Value::String(title)),
     );
-    let folder = path
-        .parent()
-        .filter(|folder| !folder.as_os_str().is_empty())
-        .unwrap_or(Path::new("."));
-    let failed = |error: &dyn std::fmt::Display| {
+    let refused = |reason: &dyn std::fmt::Display| {
         miette!(
-            help = "check that the folder exists and may be written",
-            "cannot write {}: {error}",
+            help = "choose another name or folder",
+            "cannot write {}: {reason}",
             path.display()
         )
     };
-    let mut file = beside(folder).map_err(|error| failed(&error))?;
-    file.write_all(text.as_bytes())
-        .and_then(|()| file.as_file().sync_all())
-        .map_err(|error| failed(&error))?;
-    let kept = if args.force {
-        file.persist(&path)
-    } else {
-        file.persist_noclobber(&path)
-    };
-    if let Err(error) = kept {
-        if error.error.kind() == std::io::ErrorKind::AlreadyExists {
+    let (whole, mut file) = WholeFile::create(&path).map_err(|why| match why {
+        Refusal::Path(reason) => refused(&reason),
+        Refusal::Machine(error) => refused(&error),
+    })?;
+    let written = file.write_all(text.as_bytes()).and_then(|()| {
+        if args.force {
+            whole.finish(file)
+        } else {
+            whole.finish_new(file)
+        }
+    });
+    match written {
+        Err(error) if error.kind() == ErrorKind::AlreadyExists => {
             return Err(miette!(
                 help = "choose another name, or add --force to replace it",
                 "{} exists",
                 path.display()
             ));
         }
-        return Err(failed(&error.error));
+        other => other.map_err(|error| refused(&error))?,
     }
     let shown = path.display();
     super::parts::say(&format!(
         "{shown} written. Next: harklight render {shown} --input sent.wav --output received.wav\n"
     ))
-}
-
-/// A temporary file with the rights of an ordinary one.
-fn beside(folder: &Path) -> std::io::Result<tempfile::NamedTempFile> {
-    #[allow(unused_mut)]
-    let mut builder = tempfile::Builder::new();
-    #[cfg(unix)]
-    {
-        use std::os::unix::fs::PermissionsExt;
-        builder.permissions(std::fs::Permissions::from_mode(0o666));
-    }
-    builder.tempfile_in(folder)
 }
 
 /// NAME with its ending.

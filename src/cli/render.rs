@@ -1,6 +1,6 @@
 //! `harklight render`: a WAV through the link, and its figures.
 
-use std::path::PathBuf;
+use std::path::{Path, PathBuf};
 use std::process::ExitCode;
 use std::time::Duration;
 
@@ -8,17 +8,17 @@ use clap::ValueEnum;
 use indicatif::{ProgressBar, ProgressStyle};
 use miette::miette;
 
+use super::outputs::{FiguresFile, refuse_overwriting};
 use super::{DesignArgs, Failure, conclude, seed};
 use crate::design::Design;
 use crate::link::Link;
-use crate::render::programme::{Job, render};
+use crate::quantity::{self, Dimension};
+use crate::render::programme::{Job, STEMS, render, stem_path};
 use crate::signal::wav::SampleFormat;
 
 /// Run a WAV through a design and write what the receiver puts out
 #[derive(clap::Args)]
 pub struct Args {
-    #[command(flatten)]
-    design: DesignArgs,
     /// The WAV that is sent; - is standard input
     #[arg(long, value_name = "WAV")]
     input: PathBuf,
@@ -51,6 +51,8 @@ pub struct Args {
     /// Mix a stereo input to one channel
     #[arg(long)]
     mono: bool,
+    #[command(flatten)]
+    design: DesignArgs,
 }
 
 #[derive(Clone, Copy, ValueEnum)]
@@ -76,31 +78,12 @@ pub fn run(args: &Args) -> Result<ExitCode, Failure> {
         )
         .into());
     }
-    let drive = crate::quantity::parse(&args.drive, crate::quantity::Dimension::Decibel)
-        .ok()
-        .filter(|db| db.is_finite() && db.abs() <= 200.0)
-        .ok_or_else(|| {
-            miette!(
-                help = "a level in decibels from -200 to 200, as -6",
-                "--drive {} is no such level",
-                args.drive
-            )
-        })?;
-    let oversample = match args.oversample.as_str() {
-        "auto" => None,
-        text => Some(
-            text.parse()
-                .ok()
-                .filter(|n| [1, 2, 4, 8, 16, 32].contains(n))
-                .ok_or_else(|| {
-                    miette!(
-                        help = "1, 2, 4, 8, 16, 32 or auto",
-                        "--oversample {text} is no such number"
-                    )
-                })?,
-        ),
-    };
+    let drive = level(&args.drive)?;
+    let oversample = oversample(&args.oversample)?;
     let design = Design::load(&args.design.design, &args.design.sets)?;
+    check_files(args, &design)?;
+    let figures = args.figures.as_deref().map(FiguresFile::create);
+    let figures = figures.transpose()?;
     let link = Link::new(&design)?;
     let job = Job {
         input: args.input.clone(),
@@ -132,9 +115,58 @@ pub fn run(args: &Args) -> Result<ExitCode, Failure> {
         &design,
         &link,
         Some(&outcome?),
-        args.figures.as_deref(),
+        figures,
         to_terminal,
     )
+}
+
+/// The level that `--drive` names, dB.
+fn level(text: &str) -> Result<f64, Failure> {
+    const HELP: &str = "a level in decibels from -200 to 200, for example -6";
+    let level = quantity::parse(text, Dimension::Decibel)
+        .map_err(|e| miette!(help = HELP, "--drive `{text}`: {e}"))?;
+    if level.abs() <= 200.0 {
+        Ok(level)
+    } else {
+        Err(miette!(help = HELP, "--drive `{text}` is out of range").into())
+    }
+}
+
+/// The factor that `--oversample` names; none for `auto`.
+fn oversample(text: &str) -> Result<Option<u32>, Failure> {
+    if text == "auto" {
+        return Ok(None);
+    }
+    let factor = text.parse().ok();
+    factor
+        .filter(|n| [1, 2, 4, 8, 16, 32].contains(n))
+        .map(Some)
+        .ok_or_else(|| {
+            miette!("--oversample takes 1, 2, 4, 8, 16, 32 or auto, not `{text}`").into()
+        })
+}
+
+/// Refuses to write over anything that is read.
+fn check_files(args: &Args, design: &Design) -> Result<(), Failure> {
+    let folder = args.design.design.parent().unwrap_or(Path::new(""));
+    let parts = design.value_at("parts").ok();
+    let catalogue = parts
+        .and_then(|found| found.section.optional_word("parts"))
+        .map(|name| folder.join(name));
+    let mut inputs = vec![
+        ("the input", args.input.as_path()),
+        ("the design file", args.design.design.as_path()),
+    ];
+    inputs.extend(catalogue.as_deref().map(|c| ("the design's catalogue", c)));
+    let stems: Vec<PathBuf> = STEMS
+        .iter()
+        .filter(|_| args.stems)
+        .map(|s| stem_path(&args.output, s))
+        .collect();
+    let mut outputs = vec![("--output", args.output.as_path())];
+    outputs.extend(stems.iter().map(|s| ("the stem", s.as_path())));
+    outputs.extend(args.figures.as_deref().map(|f| ("--figures", f)));
+    refuse_overwriting(&outputs, &inputs)
 }
 
 /// A bar on standard error, or nothing where that is no terminal.

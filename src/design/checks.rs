@@ -133,12 +133,49 @@ pub(super) fn all(design: &Design) -> Result<(), DesignError> {
     light_curve(&design.emitter)?;
     electrical(&design.front_end)?;
     light(design)?;
-    let band = design.measure.numbers("band");
-    if band.len() == 2 && band[0] >= band[1] {
-        return Err(design.measure.fault(
+    measurable(&design.measure)
+}
+
+/// Half the rate of the test signals, Hz: no band reaches beyond.
+const HIGHEST_BAND: f64 = 192_000.0;
+
+/// A band that the test signals span, with the tone inside.
+fn measurable(measure: &Section) -> Result<(), DesignError> {
+    let band = measure.numbers("band");
+    let tone = measure.number("tone");
+    let hertz = |f: f64| format(f, Dimension::Hertz);
+    if band[0] >= band[1] {
+        return Err(measure.fault(
             Some("band"),
             "measure.band ends below its start",
             "write the lower edge first",
+        ));
+    }
+    if band[1] > HIGHEST_BAND {
+        return Err(measure.fault(
+            Some("band"),
+            format!(
+                "measure.band ends at {}, beyond what the test signals reach",
+                hertz(band[1])
+            ),
+            format!("its upper edge may be {} at most", hertz(HIGHEST_BAND)),
+        ));
+    }
+    if !(band[0]..=band[1]).contains(&tone) {
+        let key = if measure.given("tone") {
+            "tone"
+        } else {
+            "band"
+        };
+        return Err(measure.fault(
+            Some(key),
+            format!(
+                "measure.tone of {} lies outside the band of {} to {}",
+                hertz(tone),
+                hertz(band[0]),
+                hertz(band[1])
+            ),
+            "give a tone inside the band, or a wider band",
         ));
     }
     Ok(())

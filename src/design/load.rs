@@ -13,7 +13,7 @@ use super::keys::{self, Spec};
 use super::node::{self, Node, Tree};
 use super::section::Section;
 use super::suggest::did_you_mean;
-use super::{checks, read, require, set, tolerance, unbuilt};
+use super::{checks, read, require, set, tolerance};
 
 const GROUPS: [(&str, &[&str]); 2] = [
     ("transmitter", &["stage", "driver", "emitter"]),
@@ -139,9 +139,6 @@ pub(super) fn text_of(
     }
     if let Some(node) = root.get("tolerance") {
         design.tolerance = tolerance::read(node, &design)?;
-    }
-    for (section, spec) in design.sections() {
-        unbuilt::refuse(section, spec.path)?;
     }
     Ok(design)
 }

@@ -17,7 +17,6 @@ mod section;
 mod set;
 mod suggest;
 mod tolerance;
-mod unbuilt;
 
 use std::path::Path;
 

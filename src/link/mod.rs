@@ -11,6 +11,7 @@ use num_complex::Complex64;
 
 use crate::design::{Design, DesignError};
 use crate::station::ambient::Lamp;
+use crate::station::output::Sound;
 use crate::station::{Conditions, Curves, Model};
 
 /// The whole link: its stations in the order of the light's way.
@@ -20,6 +21,7 @@ pub struct Link {
     /// Peak volts of a sample of 1, at the source and at the output.
     source_full_scale: f64,
     output_full_scale: f64,
+    sound: Option<Sound>,
     max_current: f64,
     measured_to: Option<f64>,
     /// Index of the receive head, and its detector's A/W.
@@ -56,6 +58,11 @@ impl Link {
     /// Peak volts at the output that become a sample of 1.
     pub fn output_full_scale(&self) -> f64 {
         self.output_full_scale
+    }
+
+    /// How loud the output is, where it sounds.
+    pub fn sound(&self) -> Option<Sound> {
+        self.sound
     }
 
     /// Largest current that the emitter may carry, A.
@@ -106,7 +113,8 @@ impl Link {
             curves: Curves::Bent,
             noise: true,
             lamps: true,
-            interruptions: true,
+            fades: true,
+            start: 0.0,
             seed,
             channel: 0,
             cold: false,

@@ -4,15 +4,18 @@ use std::collections::BTreeSet;
 
 use super::Link;
 use crate::design::{Design, DesignError, Section};
-use crate::physics::constants::thermal_voltage;
 use crate::station::Model;
-use crate::station::air::{AirPath, Optics};
 use crate::station::ambient::Lamp;
 use crate::station::coupling::Coupling;
+use crate::station::filter::{ActiveFilter, RcFilter};
 use crate::station::opamp::OpampStage;
+use crate::station::optics::Optics;
 use crate::station::output::Output;
-use crate::station::receive_head::{Detector, LightAtRest, LoadHead, TransimpedanceHead};
+use crate::station::path::LightPath;
+use crate::station::power::PowerAmplifier;
+use crate::station::receive_head::{LightAtRest, Sensitivity, receive_head};
 use crate::station::source::Source;
+use crate::station::transistor::TransistorStage;
 use crate::station::transmit_head::TransmitHead;
 use crate::station::trim::Trim;
 use crate::station::wiring::{Drive, Load};
@@ -20,7 +23,6 @@ use crate::station::wiring::{Drive, Load};
 /// Compiles `design` into a link.
 pub fn wire(design: &Design) -> Result<Link, DesignError> {
     let t = design.temperature;
-    let vt = thermal_voltage(t);
     let mut stations: Vec<Box<dyn Model>> = Vec::new();
 
     let source = Source::new(&design.source, t);
@@ -29,7 +31,7 @@ pub fn wire(design: &Design) -> Result<Link, DesignError> {
     stations.push(Box::new(source));
     drive = stages(
         &design.transmitter_stages,
-        TransmitHead::input_load(&design.driver),
+        TransmitHead::input_load(&design.driver, t),
         drive,
         t,
         &mut stations,
@@ -41,9 +43,10 @@ pub fn wire(design: &Design) -> Result<Link, DesignError> {
     stations.push(Box::new(head));
 
     let wavelength = design.emitter.number("wavelength");
-    let detector = Detector::new(&design.detector, wavelength, t, vt);
-    let optics = Optics::new(&design.optics, detector.area);
-    let path = AirPath::new(
+    let sensitivity = Sensitivity::new(&design.detector, wavelength);
+    let responsivity = sensitivity.responsivity;
+    let optics = Optics::new(&design.optics, sensitivity.area);
+    let path = LightPath::new(
         &design.path,
         &design.interruptions,
         &design.emitter,
@@ -56,25 +59,25 @@ pub fn wire(design: &Design) -> Result<Link, DesignError> {
     let lamps = design
         .ambient
         .iter()
-        .map(|section| Lamp::new(section, &optics, detector.responsivity))
+        .map(|section| Lamp::new(section, &optics, responsivity))
         .collect::<Result<Vec<_>, _>>()?;
     let light = LightAtRest {
-        signal: received * detector.responsivity,
+        signal: received * responsivity,
         ambient: lamps.iter().fold(0.0, |sum, lamp| sum + lamp.mean()),
     };
-    let responsivity = detector.responsivity;
     let receiver_at = stations.len();
     let receiver = &design.receiver_stages;
-    let next = input_load(receiver, Output::input_load(&design.output));
-    if design.front_end.kind.as_deref() == Some("transimpedance") {
-        let head = TransimpedanceHead::new(&design.front_end, detector, light, &next, t);
-        drive = head.drive();
-        stations.push(Box::new(head));
-    } else {
-        let head = LoadHead::new(&design.front_end, detector, light, &next, t);
-        drive = head.drive();
-        stations.push(Box::new(head));
-    }
+    let next = input_load(receiver, Output::input_load(&design.output), t);
+    let (head, offers) = receive_head(
+        &design.front_end,
+        &design.detector,
+        (sensitivity, wavelength),
+        light,
+        &next,
+        t,
+    );
+    drive = offers;
+    stations.push(head);
     drive = stages(
         receiver,
         Output::input_load(&design.output),
@@ -84,6 +87,7 @@ pub fn wire(design: &Design) -> Result<Link, DesignError> {
     )?;
     let output = Output::new(&design.output, &drive);
     let output_full_scale = output.full_scale();
+    let sound = output.sound();
     stations.push(Box::new(output));
 
     let mut link = Link {
@@ -91,6 +95,7 @@ pub fn wire(design: &Design) -> Result<Link, DesignError> {
         lamps,
         source_full_scale,
         output_full_scale,
+        sound,
         max_current,
         measured_to,
         receiver: receiver_at,
@@ -101,6 +106,15 @@ pub fn wire(design: &Design) -> Result<Link, DesignError> {
     if received <= 0.0 {
         link.warnings
             .push("no light arrives at the detector: the output holds noise alone".into());
+    }
+    if design.path.kind.as_deref() == Some("fibre") {
+        let outside = design.ambient.iter().filter(|a| !a.given("photocurrent"));
+        link.warnings.extend(outside.map(|a| {
+            format!(
+                "{}: it falls on the detector as if there were no fibre before it; a closed connector would keep it out",
+                a.path
+            )
+        }));
     }
     link.warnings.extend(unknown_silence(&link));
     Ok(link)
@@ -122,20 +136,26 @@ fn units(sections: &[Section]) -> Vec<(&Section, usize)> {
 }
 
 /// What one stage shows to what drives it, with `next` behind it.
-fn stage_load(section: &Section, next: &Load) -> Load {
+fn stage_load(section: &Section, next: &Load, temperature: f64) -> Load {
     match section.kind.as_deref() {
         Some("coupling") => Coupling::input_load(section, next),
         Some("trim") => Trim::input_load(section, next),
+        Some("transistor") => TransistorStage::input_load(section, next, temperature),
+        Some("filter") if ActiveFilter::describes(section) => ActiveFilter::input_load(next),
+        Some("filter") => RcFilter::input_load(section, next),
+        Some("power") => PowerAmplifier::input_load(),
         _ => OpampStage::input_load(section),
     }
 }
 
 /// What a row of stages shows to what drives it, `end` behind the last.
-fn input_load(sections: &[Section], end: Load) -> Load {
+fn input_load(sections: &[Section], end: Load, temperature: f64) -> Load {
     units(sections)
         .iter()
         .rev()
-        .fold(end, |next, (section, _)| stage_load(section, &next))
+        .fold(end, |next, (section, _)| {
+            stage_load(section, &next, temperature)
+        })
 }
 
 /// Adds a row of stages between `drive` and the load `end`; gives what the last one offers.
@@ -150,7 +170,7 @@ fn stages(
     let mut loads = vec![end];
     for (section, _) in row.iter().rev() {
         let next = loads[loads.len() - 1];
-        loads.push(stage_load(section, &next));
+        loads.push(stage_load(section, &next, temperature));
     }
     loads.pop();
     for ((section, unit), next) in row.into_iter().zip(loads.iter().rev()) {
@@ -162,6 +182,26 @@ fn stages(
             }
             Some("trim") => {
                 let stage = Trim::new(section, &drive, next, temperature);
+                drive = stage.drive();
+                stations.push(Box::new(stage));
+            }
+            Some("transistor") => {
+                let stage = TransistorStage::new(section, &drive, next, temperature);
+                drive = stage.drive();
+                stations.push(Box::new(stage));
+            }
+            Some("filter") if ActiveFilter::describes(section) => {
+                let stage = ActiveFilter::new(section, &drive, next);
+                drive = stage.drive();
+                stations.push(Box::new(stage));
+            }
+            Some("filter") => {
+                let stage = RcFilter::new(section, &drive, next, temperature);
+                drive = stage.drive();
+                stations.push(Box::new(stage));
+            }
+            Some("power") => {
+                let stage = PowerAmplifier::new(section, next);
                 drive = stage.drive();
                 stations.push(Box::new(stage));
             }

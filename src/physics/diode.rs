@@ -22,6 +22,9 @@ pub struct SeriesLoop {
 }
 
 impl SeriesLoop {
+    /// Largest exponent taken where nothing but the junction limits the current (10^100 of its saturation current is nobody's diode).
+    const STEEPEST: f64 = 230.0;
+
     /// Current, A, at the driving voltage `drive` (V); between −I_s (hard reverse) and what the resistance lets through.
     pub fn current(&self, drive: f64) -> f64 {
         let Self {
@@ -33,7 +36,7 @@ impl SeriesLoop {
         let target = drive / nvt;
         let k = r * is / nvt;
         if k <= 0.0 {
-            return is * target.exp_m1();
+            return is * target.min(Self::STEEPEST).exp_m1();
         }
         // Start above the root: for a forward drive the smaller of the two asymptotes, else the drive itself.
         let mut w = if target > 0.0 {

@@ -65,6 +65,12 @@ pub fn closed_loop_bandwidth(gain_bandwidth: f64, noise_gain: f64) -> f64 {
     gain_bandwidth / noise_gain
 }
 
+/// What a class-B gap of half-width `half` (V, ≥ 0) leaves of a voltage: v − clamp(v, ±half).
+#[inline]
+pub fn gap(v: f64, half: f64) -> f64 {
+    v - v.clamp(-half, half)
+}
+
 /// Full-power bandwidth slew/(2π·peak), Hz, of a sine of `peak` volts.
 pub fn full_power_bandwidth(slew: f64, peak: f64) -> f64 {
     slew / (std::f64::consts::TAU * peak)

@@ -1,6 +1,7 @@
 //! A link run on something: a WAV to a WAV with its stems, or test signals to figures.
 
 mod headroom;
+mod lane;
 pub mod programme;
 pub mod test_signals;
 

@@ -6,11 +6,12 @@ use miette::Diagnostic;
 use rayon::prelude::*;
 use thiserror::Error;
 
+use super::lane::{Lane, Run};
 use crate::figures::programme::{LevelMeter, ResidualMeter};
-use crate::link::{Chain, Link, StationEvents};
-use crate::signal::resample::{Downsampler, RatioError, Upsampler};
-use crate::signal::wav::{SampleFormat, WavError, WavReader, WavSpec, WavWriter, same_file};
-use crate::station::{Conditions, Curves};
+use crate::link::{Link, StationEvents};
+use crate::signal::resample::RatioError;
+use crate::signal::wav::{SampleFormat, WavError, WavReader, WavSpec, WavWriter};
+use crate::whole_file::same_file;
 
 /// What to render, and how.
 #[derive(Debug, Clone)]
@@ -73,6 +74,9 @@ pub struct ChannelOutcome {
 pub struct Outcome {
     pub spec: WavSpec,
     pub frames: u64,
+    /// Change of level at the source, dB; what is said of the sent programme is without it.
+    pub drive: f64,
+    pub cold: bool,
     pub oversample: u32,
     /// Rate that the stations saw, Hz.
     pub link_rate: f64,
@@ -93,6 +97,9 @@ pub fn auto_oversample(rate: u32) -> u32 {
         .find(|n| rate * n >= AUTO_RATE)
         .unwrap_or(8)
 }
+
+/// The stems, in the order they are written.
+pub const STEMS: [&str; 3] = ["clean", "noise", "distortion"];
 
 /// Path of the stem `name` beside `output`: received.wav → received.noise.wav.
 pub fn stem_path(output: &Path, name: &str) -> PathBuf {
@@ -129,7 +136,7 @@ pub fn render(
     };
     let mut paths = vec![job.output.clone()];
     if job.stems {
-        paths.extend(["clean", "noise", "distortion"].map(|s| stem_path(&job.output, s)));
+        paths.extend(STEMS.map(|s| stem_path(&job.output, s)));
     }
     if let Some(path) = paths
         .iter()
@@ -182,6 +189,8 @@ pub fn render(
     Ok(Outcome {
         spec,
         frames: done,
+        drive: job.drive,
+        cold: job.cold,
         oversample: factor,
         link_rate: f64::from(from.rate) * f64::from(factor),
         channels: lanes.into_iter().map(Lane::outcome).collect(),
@@ -194,16 +203,12 @@ fn write_ready(lanes: &mut [Lane], writers: &mut [WavWriter]) -> Result<(), Rend
     let ready = lanes
         .iter()
         .flat_map(|l| &l.runs)
-        .map(|r| r.ready.len())
+        .map(Run::waiting)
         .min()
         .unwrap_or(0);
     let mut tracks: Vec<Vec<Vec<f64>>> = vec![Vec::new(); writers.len()];
     for lane in lanes.iter_mut() {
-        let mut parts: Vec<Vec<f64>> = lane
-            .runs
-            .iter_mut()
-            .map(|r| r.ready.drain(..ready).collect())
-            .collect();
+        let mut parts: Vec<Vec<f64>> = lane.runs.iter_mut().map(|r| r.take(ready)).collect();
         lane.received.add(&parts[0]);
         if let [full, noiseless, clean] = &mut parts[..] {
             let noise: Vec<f64> = full
@@ -234,106 +239,4 @@ fn write_ready(lanes: &mut [Lane], writers: &mut [WavWriter]) -> Result<(), Rend
         writer.write(&views)?;
     }
     Ok(())
-}
-
-/// One channel on its way: a link of its own for each run that is asked for.
-struct Lane {
-    up: Upsampler,
-    high: Vec<f64>,
-    /// The full run; with stems also the noiseless and the straight one.
-    runs: Vec<Run>,
-    sent: LevelMeter,
-    received: LevelMeter,
-    noise: ResidualMeter,
-    distortion: ResidualMeter,
-}
-
-struct Run {
-    chain: Chain,
-    down: Downsampler,
-    scale: f64,
-    block: Vec<f64>,
-    ready: Vec<f64>,
-}
-
-impl Lane {
-    fn new(
-        link: &Link,
-        job: &Job,
-        rate: u32,
-        factor: u32,
-        channel: usize,
-    ) -> Result<Self, RatioError> {
-        let rate_in_link = f64::from(rate) * f64::from(factor);
-        let full = Conditions {
-            channel,
-            cold: job.cold,
-            ..link.conditions(rate_in_link, job.seed)
-        };
-        let mut kinds = vec![full.clone()];
-        if job.stems {
-            let noiseless = Conditions {
-                noise: false,
-                lamps: false,
-                ..full
-            };
-            let clean = Conditions {
-                curves: Curves::Straight,
-                ..noiseless.clone()
-            };
-            kinds.extend([noiseless, clean]);
-        }
-        let runs = kinds
-            .iter()
-            .map(|conditions| {
-                Ok(Run {
-                    chain: link.chain(conditions),
-                    down: Downsampler::new(rate, factor)?,
-                    scale: 1.0 / link.output_full_scale(),
-                    block: Vec::new(),
-                    ready: Vec::new(),
-                })
-            })
-            .collect::<Result<_, RatioError>>()?;
-        Ok(Self {
-            up: Upsampler::new(rate, factor)?,
-            high: Vec::new(),
-            runs,
-            sent: LevelMeter::default(),
-            received: LevelMeter::default(),
-            noise: ResidualMeter::default(),
-            distortion: ResidualMeter::default(),
-        })
-    }
-
-    /// Takes the next samples through every run; `last` flushes what the converters hold.
-    fn feed(&mut self, sent: &[f64], last: bool) {
-        self.high.clear();
-        self.up.process(sent, &mut self.high);
-        if last {
-            self.up.finish(&mut self.high);
-        }
-        let high = &self.high;
-        self.runs.par_iter_mut().for_each(|run| {
-            run.block.clear();
-            run.block.extend_from_slice(high);
-            run.chain.run(&mut run.block);
-            run.block.iter_mut().for_each(|x| *x *= run.scale);
-            run.down.process(&run.block, &mut run.ready);
-            if last {
-                run.down.finish(&mut run.ready);
-            }
-        });
-    }
-
-    fn outcome(self) -> ChannelOutcome {
-        let stems = self.runs.len() > 1;
-        ChannelOutcome {
-            sent: self.sent,
-            received: self.received,
-            noise: stems.then_some(self.noise),
-            distortion: stems.then_some(self.distortion),
-            events: self.runs[0].chain.events(),
-        }
-    }
 }

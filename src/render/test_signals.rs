@@ -12,6 +12,7 @@ use crate::figures::{self, Figures, Unmeasurable, decibels};
 use crate::link::{Link, StationEvents};
 use crate::signal::tone::Tone;
 use crate::station::Conditions;
+use crate::station::ambient::Lamp;
 
 /// The test conditions of a design, `[measure]`.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -60,13 +61,13 @@ const SETTLING: f64 = 0.1;
 const TIME_CONSTANTS: f64 = 10.0;
 const PATIENCE: f64 = 1.0;
 
-/// Measures `link` under `bench` with the noises of `seed`. Interruptions are left out.
+/// Measures `link` under `bench` with the noises of `seed`. The path is steady: no interruptions, scintillation or sway.
 ///
 /// Four records of a second each, run side by side: the tone without noise (gain, THD), the tone with everything (THD+N), silence
 /// with everything (noise), silence with the lamps alone (hum). The band's edges come from the Model faces.
 pub fn measure(link: &Link, bench: &Bench, seed: u64) -> Measured {
     let all = Conditions {
-        interruptions: false,
+        fades: false,
         ..link.conditions(TEST_RATE, seed)
     };
     let quiet = Conditions {
@@ -74,11 +75,15 @@ pub fn measure(link: &Link, bench: &Bench, seed: u64) -> Measured {
         lamps: false,
         ..all.clone()
     };
-    let lamps = Conditions {
+    // Hum is what follows the mains: lamps with a clock of their own stand still for it.
+    let (hums, others): (Vec<&Lamp>, Vec<&Lamp>) =
+        link.lamps().iter().partition(|l| l.mains().is_some());
+    let mut lamps = Conditions {
         noise: false,
         ..all.clone()
     };
-    let flickers = link.lamps().iter().any(|l| l.lines().next().is_some());
+    lamps.silence.extend(others.iter().map(|l| l.hum_name()));
+    let flickers = !hums.is_empty();
 
     let ((pure, noisy), (idle, hum)) = rayon::join(
         || {
@@ -248,17 +253,12 @@ fn hum_figure(
     record: Option<Result<Record, Reason>>,
 ) {
     let Some(record) = record else {
-        return figures.explain("hum_db", "no lamp flickers");
+        return figures.explain("hum_db", "no lamp flickers with the mains");
     };
     let Some(signal) = fundamental else {
         return figures.explain("hum_db", "no tone arrives");
     };
-    let mut mains: Vec<f64> = link
-        .lamps()
-        .iter()
-        .filter(|l| l.lines().next().is_some())
-        .map(|l| l.mains())
-        .collect();
+    let mut mains: Vec<f64> = link.lamps().iter().filter_map(|l| l.mains()).collect();
     mains.sort_by(f64::total_cmp);
     mains.dedup();
     let power = record.and_then(|r| {

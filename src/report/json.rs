@@ -2,7 +2,7 @@
 
 use serde_json::{Map, Value, json};
 
-use super::Findings;
+use super::{Findings, cautions};
 use crate::figures::distortion::{THD_FLOOR, THD_N_FLOOR};
 use crate::figures::{NOISE_FLOOR, decibels};
 use crate::link::StationEvents;
@@ -70,10 +70,12 @@ pub fn document(findings: &Findings) -> Value {
         "figures": figures,
         "reasons": figures.reasons,
         "below_floor": figures.below_floor,
-        "channels": findings.programme.map_or(Vec::new(), |p| p.channels.iter().map(channel).collect()),
+        "channels": findings.programme.map_or(Vec::new(), |p| p.channels.iter().map(|c| channel(findings, c)).collect()),
         "programme": findings.programme.map(|p| json!({
             "frames": p.frames,
             "rate_hz": p.spec.rate,
+            "drive_db": p.drive,
+            "cold": p.cold,
             "oversample": p.oversample,
             "link_rate_hz": p.link_rate,
             "files": p.files.iter().map(|f| f.to_string_lossy()).collect::<Vec<_>>(),
@@ -87,12 +89,18 @@ pub fn document(findings: &Findings) -> Value {
             "key": v.key, "limit": v.limit, "value": v.value, "met": v.met, "reason": v.reason,
         })).collect::<Vec<_>>(),
         "warnings": findings.warnings,
+        "sound": cautions::levels(findings).map(|l| json!({
+            "tone_level_db": l.tone.and_then(finite),
+            "full_scale_level_db": finite(l.full_scale),
+        })),
+        "cautions": cautions::texts(findings),
     })
 }
 
 /// The programme figures of one channel.
-fn channel(c: &ChannelOutcome) -> Value {
+fn channel(findings: &Findings, c: &ChannelOutcome) -> Value {
     json!({
+        "sound_level_db": cautions::programme_level(findings, c),
         "sent_dbfs": c.sent.rms_dbfs(),
         "sent_peak_dbfs": c.sent.peak_dbfs(),
         "received_dbfs": c.received.rms_dbfs(),
@@ -158,9 +166,9 @@ fn unit_suffix(dimension: Dimension) -> &'static str {
     }
 }
 
-/// JSON has no infinity: a value without bound is null.
+/// JSON has no infinity: a value without bound is null. Nor is there any use in its minus nought.
 fn finite(value: f64) -> Option<f64> {
-    value.is_finite().then_some(value)
+    value.is_finite().then_some(value + 0.0)
 }
 
 fn limit(limit: &Limit) -> Option<Value> {

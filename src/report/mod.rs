@@ -1,5 +1,6 @@
 //! Results as people and programs read them, from results alone.
 
+mod cautions;
 pub mod json;
 pub mod terminal;
 

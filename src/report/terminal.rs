@@ -2,7 +2,7 @@
 
 use std::fmt::Write as _;
 
-use super::Findings;
+use super::{Findings, cautions};
 use crate::figures::Figures;
 use crate::link::StationEvents;
 use crate::quantity::Dimension;
@@ -20,6 +20,7 @@ pub fn text(findings: &Findings) -> String {
     operating_lines(&mut out, f);
     budget_lines(&mut out, f);
     requirement_lines(&mut out, f);
+    caution_lines(&mut out, f);
     out
 }
 
@@ -29,7 +30,9 @@ fn heading(out: &mut String, text: &str) {
 
 /// One line: a name, a value, and what there is to say of it.
 fn line(out: &mut String, name: &str, value: &str, remark: &str) {
-    let text = format!("  {name:<22}{value:<16}{remark}");
+    // A name or a value too long for its column keeps two spaces behind it.
+    let text = format!("{:<24}", format!("  {name}  "));
+    let text = format!("{text}{:<16}{remark}", format!("{value}  "));
     let _ = writeln!(out, "{}", text.trim_end());
 }
 
@@ -67,18 +70,22 @@ fn programme_lines(out: &mut String, p: &Outcome) {
         &Dimension::Hertz.show(p.link_rate),
         &format!("{} samples of the link for each of the file", p.oversample),
     );
+    if p.drive != 0.0 {
+        let drive = Dimension::Decibel.show(p.drive);
+        line(out, "drive", &drive, "change of level at the source");
+    }
     for (n, c) in p.channels.iter().enumerate() {
         if p.channels.len() > 1 {
             let _ = writeln!(out, "  channel {}", n + 1);
         }
-        channel_lines(out, c);
+        channel_lines(out, c, p);
     }
     for file in &p.files {
         line(out, "written", &file.display().to_string(), "");
     }
 }
 
-fn channel_lines(out: &mut String, c: &ChannelOutcome) {
+fn channel_lines(out: &mut String, c: &ChannelOutcome, p: &Outcome) {
     let level = |db: Option<f64>| db.map_or("silent".into(), |v| format!("{v:.1} dBFS"));
     line(
         out,
@@ -117,20 +124,30 @@ fn channel_lines(out: &mut String, c: &ChannelOutcome) {
             ),
         );
     }
-    event_lines(out, &c.events);
+    event_lines(out, &c.events, p);
 }
 
-fn event_lines(out: &mut String, all: &[StationEvents]) {
+fn event_lines(out: &mut String, all: &[StationEvents], p: &Outcome) {
+    let whole = p.frames as f64 * f64::from(p.oversample);
     for StationEvents { path, events } in all {
         for (count, what) in [
-            (events.clipped, "samples at a limit"),
-            (events.slewing, "samples slewing"),
-            (events.cut_off, "samples dark"),
-            (events.interruptions, "interruptions"),
+            (events.clipped, "at a limit"),
+            (events.slewing, "slewing"),
+            (events.cut_off, "dark"),
         ] {
             if count > 0 {
-                line(out, path, &count.to_string(), what);
+                let time = Dimension::Second.show(count as f64 / p.link_rate);
+                let share = percent(Some(100.0 * count as f64 / whole));
+                line(out, path, &time, &format!("{what}, {share} of the time"));
             }
+        }
+        if events.interruptions > 0 {
+            line(
+                out,
+                path,
+                &events.interruptions.to_string(),
+                "interruptions",
+            );
         }
     }
 }
@@ -170,10 +187,9 @@ fn figure_lines(out: &mut String, f: &Findings) {
             &format!("SINAD {}", decibels(figures.sinad_db)),
         ),
     );
-    let scatter = f
-        .measured
-        .noise_scatter_db
-        .map_or(String::new(), |s| format!(" ± {s:.2} dB"));
+    let scatter = f.measured.noise_scatter_db.map_or(String::new(), |s| {
+        format!("; the record leaves ± {s:.2} dB on white noise")
+    });
     line(
         out,
         "SNR",
@@ -232,7 +248,7 @@ fn operating_lines(out: &mut String, f: &Findings) {
             .operating_point()
             .iter()
             .filter(|r| r.value.is_finite())
-            .map(|r| format!("{} {}", r.name, r.dimension.show(r.value)))
+            .map(|r| format!("{} {}", r.name, r.dimension.show(r.value + 0.0)))
             .collect();
         if !values.is_empty() {
             let _ = writeln!(out, "  {}: {}", station.path(), values.join(", "));
@@ -259,10 +275,10 @@ fn operating_lines(out: &mut String, f: &Findings) {
             out,
             "peak LED current",
             &Dimension::Ampere.show(peak),
-            &format!(
-                "of {} allowed",
-                Dimension::Ampere.show(f.link.max_current())
-            ),
+            &match f.link.max_current() {
+                most if most.is_finite() => format!("of {} allowed", Dimension::Ampere.show(most)),
+                _ => "no limit is given".into(),
+            },
         );
     }
 }
@@ -313,5 +329,16 @@ fn requirement_lines(out: &mut String, f: &Findings) {
             if v.met { "met" } else { "NOT MET" },
             &value,
         );
+    }
+}
+
+fn caution_lines(out: &mut String, f: &Findings) {
+    let texts = cautions::texts(f);
+    if texts.is_empty() {
+        return;
+    }
+    heading(out, "Cautions");
+    for text in texts {
+        let _ = writeln!(out, "  {text}");
     }
 }

@@ -2,10 +2,13 @@
 //!
 //! Nothing here knows of light or of circuits. Samples are f64, rates are in Hz.
 
+pub mod edge;
 pub mod implicit;
 pub mod noise;
 pub mod pole;
+pub mod pole_pair;
 pub mod resample;
 pub mod spectrum;
 pub mod tone;
+pub mod wander;
 pub mod wav;

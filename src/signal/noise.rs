@@ -1,12 +1,13 @@
 //! Streams of random numbers, one for each cause of noise, and the shaping of white noise into 1/f noise.
 
 mod flicker;
+mod gaussian;
 
+use rand::SeedableRng;
 use rand::rngs::Xoshiro256PlusPlus;
-use rand::{RngExt, SeedableRng};
-use rand_distr::StandardNormal;
 
 pub use flicker::FlickerShaper;
+pub use gaussian::Gaussian;
 
 /// The generator of one cause of noise. The same four arguments give the same stream on every machine; a change in any one
 /// of them gives another, so that silencing one cause leaves the draws of all others as they were.
@@ -37,36 +38,6 @@ fn splitmix64(state: u64) -> u64 {
     z = (z ^ (z >> 30)).wrapping_mul(0xbf58_476d_1ce4_e5b9);
     z = (z ^ (z >> 27)).wrapping_mul(0x94d0_49bb_1331_11eb);
     z ^ (z >> 31)
-}
-
-/// White Gaussian noise of mean 0 and variance 1, drawn in order: the length of the blocks it is drawn in does not matter.
-///
-/// At a sample rate fs its one-sided density is 2/fs per Hz.
-#[derive(Debug, Clone)]
-pub struct Gaussian {
-    rng: Xoshiro256PlusPlus,
-}
-
-impl Gaussian {
-    /// The stream of one cause: see [`stream`].
-    pub fn new(seed: u64, channel: usize, path: &str, cause: &str) -> Self {
-        Gaussian {
-            rng: stream(seed, channel, path, cause),
-        }
-    }
-
-    /// The next draw.
-    #[inline]
-    pub fn draw(&mut self) -> f64 {
-        self.rng.sample(StandardNormal)
-    }
-
-    /// Fills a block with the next draws.
-    pub fn fill(&mut self, block: &mut [f64]) {
-        for x in block {
-            *x = self.draw();
-        }
-    }
 }
 
 #[cfg(test)]

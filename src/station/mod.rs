@@ -1,14 +1,18 @@
 //! The stations of the light's way and the electrical stages. Each has two faces over the same laws of `physics`: a [`Model`]
 //! on paper and a [`Runner`] in time. Signals between stations are deviations from rest, in volts or watts.
 
-pub mod air;
 pub mod ambient;
 pub mod coupling;
+pub mod filter;
 pub mod noise;
 pub mod opamp;
+pub mod optics;
 pub mod output;
+pub mod path;
+pub mod power;
 pub mod receive_head;
 pub mod source;
+pub mod transistor;
 pub mod transmit_head;
 pub mod trim;
 pub mod wiring;
@@ -39,8 +43,10 @@ pub struct Conditions {
     pub lamps: bool,
     pub seed: u64,
     pub channel: usize,
-    /// Whether the path's interruptions happen.
-    pub interruptions: bool,
+    /// Whether the light fades on its way: interruptions, scintillation, sway.
+    pub fades: bool,
+    /// Time of the first sample, s: below 0 where a run leads in before its programme.
+    pub start: f64,
     /// Whether the run starts with discharged capacitors and a cold emitter.
     pub cold: bool,
     /// Names of noise contributors that stay silent.

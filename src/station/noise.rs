@@ -81,7 +81,7 @@ impl Contributor {
 /// The 1/f part of a contributor: independent of the white part, with a stream of its own.
 ///
 /// It is made at a lower rate and joined by straight lines, as nothing of it is heard beside the white part above many times
-/// the corner: at the lower rate's half it lies 13 dB under it.
+/// the corner: at half the lower rate it lies 17 dB under it.
 struct Flicker {
     stream: Gaussian,
     shaper: FlickerShaper,
@@ -95,7 +95,7 @@ struct Flicker {
 
 impl Flicker {
     /// The lower rate over the corner, at least, and the lower rate itself, Hz.
-    const RATIO: f64 = 40.0;
+    const RATIO: f64 = 100.0;
     const LOWEST_RATE: f64 = 4000.0;
     const LONGEST_STRIDE: u32 = 64;
 

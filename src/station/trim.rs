@@ -8,6 +8,7 @@ use super::{Conditions, Limit, Model, Reading, Runner, Share};
 use crate::design::Section;
 use crate::physics::noise::johnson;
 use crate::quantity::Dimension;
+use crate::signal::pole::FirstOrderLaw;
 
 /// Share of the resistance below the wiper, for a turn of 0…1. The audio taper is the exponential with a tenth at half a
 /// turn, (81^w − 1)/80 (common practice: 10 % at mid-turn).
@@ -24,7 +25,65 @@ pub struct Trim {
     path: String,
     gain: f64,
     drive: Drive,
-    contributor: Contributor,
+    contributors: Vec<Contributor>,
+}
+
+/// What stands around the two parts of the track.
+struct Around {
+    upper: f64,
+    lower: f64,
+    /// The upper part with what feeds it, Ω.
+    behind: f64,
+    /// Resistance that the next station reckons the division by its load with, Ω.
+    series: f64,
+    /// The next station's load, S.
+    load: f64,
+    /// Capacitor that feeds it, F.
+    blocked: Option<f64>,
+}
+
+/// Noise of the upper and of the lower part, at the wiper before the next station's division.
+fn thermal(name: String, around: &Around, temperature: f64) -> Vec<Contributor> {
+    let Around {
+        upper,
+        lower,
+        behind,
+        series,
+        load,
+        blocked,
+    } = *around;
+    // Both by Kirchhoff at the wiper under its load, which the next station divides by.
+    let share = 1.0 / (1.0 + load * lower);
+    let whole = behind + lower * share;
+    let division = 1.0 + load * series;
+    let from_upper = lower * share / whole * division;
+    let from_lower = share * division;
+    let laws = match blocked {
+        Some(c) => {
+            let (zero, pole) = (1.0 / (c * behind), 1.0 / (c * whole));
+            let high_pass = FirstOrderLaw::high_pass(pole);
+            let upper = FirstOrderLaw {
+                direct: from_upper,
+                residue: from_upper * high_pass.residue,
+                rate: pole,
+            };
+            [upper, FirstOrderLaw::shelf(from_lower, zero, pole)]
+        }
+        None => [from_upper, from_lower * behind / whole].map(|direct| FirstOrderLaw {
+            direct,
+            residue: 0.0,
+            rate: 1.0,
+        }),
+    };
+    [upper, lower]
+        .into_iter()
+        .zip(laws)
+        .enumerate()
+        .map(|(unit, (part, law))| Contributor {
+            unit,
+            ..Contributor::white(name.clone(), johnson(part, temperature)).through(law)
+        })
+        .collect()
 }
 
 impl Trim {
@@ -73,21 +132,31 @@ impl Trim {
         let total = above + lower;
         let gain = lower / total;
         let foot = next.return_voltage;
-        // The pot's own noise, with whatever feeds it standing in series with the upper part.
-        let behind = upper + before.seen;
-        let whole = behind + lower;
-        let density = johnson(upper, temperature) * (lower / whole).powi(2)
-            + johnson(lower, temperature) * (behind / whole).powi(2);
+        let (series, behind) = (lower * above / total, upper + before.seen);
+        let seen = lower * behind / (behind + lower);
+        let name = format!("{}.thermal", section.path);
+        let contributors = thermal(
+            name,
+            &Around {
+                upper,
+                lower,
+                behind,
+                series,
+                load: next.signal_conductance(),
+                blocked: before.blocked,
+            },
+            temperature,
+        );
         Self {
             path: section.path.clone(),
             gain,
             drive: Drive {
                 rest: foot + (before.rest - foot) * gain,
-                series: lower * above / total,
-                seen: lower * behind / whole,
+                series,
+                seen,
                 blocked: None,
             },
-            contributor: Contributor::white(format!("{}.thermal", section.path), density),
+            contributors,
         }
     }
 
@@ -130,7 +199,10 @@ impl Model for Trim {
     }
 
     fn noise(&self, frequency: f64) -> Vec<Share> {
-        vec![self.contributor.share(frequency, 1.0)]
+        self.contributors
+            .iter()
+            .map(|c| c.share(frequency, 1.0))
+            .collect()
     }
 
     fn limits(&self) -> Vec<Limit> {
@@ -140,19 +212,19 @@ impl Model for Trim {
     fn runner(&self, conditions: &Conditions) -> Box<dyn Runner> {
         Box::new(TrimRunner {
             gain: self.gain,
-            noise: self.contributor.source(conditions),
+            noises: noise::sources(&self.contributors, conditions),
         })
     }
 }
 
 struct TrimRunner {
     gain: f64,
-    noise: Option<NoiseSource>,
+    noises: Vec<NoiseSource>,
 }
 
 impl Runner for TrimRunner {
     fn run(&mut self, block: &mut [f64], _: &[f64]) {
         block.iter_mut().for_each(|x| *x *= self.gain);
-        noise::add_all(self.noise.as_mut_slice(), block);
+        noise::add_all(&mut self.noises, block);
     }
 }

@@ -257,13 +257,20 @@ def opamp(name, level):
     )
 
 
-if __name__ == "__main__":
-    make(led("led_resistor", 1.0, 1.2))
-    make(led("led_resistor_cutoff", 2.06, 2.44))
-    make(photodiode("photodiode_load", 4.2e-6, 3.8e-6))
-    make(photodiode("photodiode_load_gentle", 2e-6, 0.5e-6))
+def cases():
     linear = [(0.6 * 6e-6, 1000.0), (0.4 * 6e-6, 17_000.0)]
-    make(transimpedance("transimpedance", 100e3, 100e-12, 2e-12, 5e6, 8e6, linear))
-    make(transimpedance("transimpedance_slew", 220e3, 120e-12, 3e-12, 1e6, 0.05e6, [(9e-6, 9000.0)]))
-    make(opamp("opamp_stage", 0.35))
-    make(opamp("opamp_stage_slew", 0.6))
+    return [
+        led("led_resistor", 1.0, 1.2),
+        led("led_resistor_cutoff", 2.06, 2.44),
+        photodiode("photodiode_load", 4.2e-6, 3.8e-6),
+        photodiode("photodiode_load_gentle", 2e-6, 0.5e-6),
+        transimpedance("transimpedance", 100e3, 100e-12, 2e-12, 5e6, 8e6, linear),
+        transimpedance("transimpedance_slew", 220e3, 120e-12, 3e-12, 1e6, 0.05e6, [(9e-6, 9000.0)]),
+        opamp("opamp_stage", 0.35),
+        opamp("opamp_stage_slew", 0.6),
+    ]
+
+
+if __name__ == "__main__":
+    for each in cases():
+        make(each)

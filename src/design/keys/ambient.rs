@@ -12,7 +12,7 @@ const RIPPLE: Key = number(
     Share,
     SHARE,
     "\"10 %\"",
-    "modulation depth (max − min)/(max + min) at twice the mains frequency",
+    "modulation depth (max − min)/(max + min) of its light",
 );
 
 const fn lamp(name: &'static str, meaning: &'static str, keys: &'static [Key]) -> Kind {
@@ -60,7 +60,14 @@ pub(super) static AMBIENT: Spec = Spec {
             "mains frequency",
         )
         .or(50.0),
-        number("phase", Angle, ANY, "\"90°\"", "of the mains").or(0.0),
+        number(
+            "phase",
+            Angle,
+            ANY,
+            "\"90°\"",
+            "of the mains; of a pwm-lamp's pulses",
+        )
+        .or(0.0),
     ],
     kinds: &[
         lamp(
@@ -85,7 +92,13 @@ pub(super) static AMBIENT: Spec = Spec {
             "a fluorescent tube on an electronic ballast",
             &[
                 RIPPLE,
-                number("frequency", Hertz, POSITIVE, "\"38 kHz\"", "of the ballast"),
+                number(
+                    "frequency",
+                    Hertz,
+                    POSITIVE,
+                    "\"38 kHz\"",
+                    "at which the ballast switches; the light's largest line is at twice it",
+                ),
             ],
         ),
         lamp(
@@ -96,7 +109,7 @@ pub(super) static AMBIENT: Spec = Spec {
                 number(
                     "duty",
                     Share,
-                    POSITIVE_SHARE,
+                    Range::new(1e-6, true, 1.0, true),
                     "\"40 %\"",
                     "share of each period that is lit",
                 ),

@@ -18,6 +18,8 @@ const STAGE_SUPPLY: Key = Key {
     absent: Absent::Nothing,
     ..SUPPLY
 };
+/// Corners that filters can be reckoned for.
+const FILTERED: Range = Range::new(1e-6, true, 1e12, true);
 const NAME: &[Key] = &[text("name", "\"preamp\"", "by which paths name this stage")];
 
 const KINDS: &[Kind] = &[
@@ -165,21 +167,21 @@ const KINDS: &[Kind] = &[
                 Count,
                 Range::new(1.0, true, 8.0, true),
                 "2",
-                "order, 1 to 8",
+                "order, 1 to 8 (of each edge of a band)",
             )
             .optional(),
             number(
                 "corner",
                 Hertz,
-                POSITIVE,
+                FILTERED,
                 "\"20 kHz\"",
-                "corner, or centre of a band",
+                "−3 dB corner (chebyshev: end of the ripple), or middle of a band",
             )
             .optional(),
             number(
                 "width",
                 Hertz,
-                POSITIVE,
+                FILTERED,
                 "\"2 kHz\"",
                 "between the band's edges (band-pass, notch)",
             )

@@ -105,6 +105,13 @@ const IMPEDANCE: Key = number(
     "load on the last stage; infinite when absent",
 )
 .or_infinite();
+const NOMINAL_IMPEDANCE: Key = number(
+    "impedance",
+    Ohm,
+    POSITIVE,
+    "\"8 Ω\"",
+    "nominal, the load on the last stage",
+);
 const SENSITIVITY: &str = "sound pressure level at 1 W and 1 m (headphone: at 1 mW)";
 
 pub(super) static OUTPUT: Spec = Spec {
@@ -112,12 +119,12 @@ pub(super) static OUTPUT: Spec = Spec {
     meaning: "What the receiver feeds, and how volts become samples",
     many: false,
     required: true,
-    common: &[FULL_SCALE, IMPEDANCE],
+    common: &[FULL_SCALE],
     kinds: &[
         Kind {
             name: "line",
             meaning: "a line input",
-            keys: &[],
+            keys: &[IMPEDANCE],
             choices: &[],
             class: None,
         },
@@ -125,6 +132,7 @@ pub(super) static OUTPUT: Spec = Spec {
             name: "loudspeaker",
             meaning: "a loudspeaker in its box",
             keys: &[
+                NOMINAL_IMPEDANCE,
                 number(
                     "resonance",
                     Hertz,
@@ -156,22 +164,21 @@ pub(super) static OUTPUT: Spec = Spec {
             name: "headphone",
             meaning: "a headphone on the ear",
             keys: &[
+                NOMINAL_IMPEDANCE,
                 number(
                     "resonance",
                     Hertz,
                     POSITIVE,
                     "\"60 Hz\"",
-                    "resonance of the capsule",
-                )
-                .optional(),
+                    "resonance of the capsule; none when absent",
+                ),
                 number(
                     "quality",
                     Number,
                     POSITIVE,
                     "0.7",
                     "quality factor at resonance",
-                )
-                .optional(),
+                ),
                 number(
                     "voice_coil",
                     Hertz,
@@ -182,7 +189,10 @@ pub(super) static OUTPUT: Spec = Spec {
                 .or_infinite(),
                 number("sensitivity", Decibel, ANY, "\"100 dB\"", SENSITIVITY),
             ],
-            choices: &[],
+            choices: &[Choice {
+                ways: &[&["resonance", "quality"]],
+                needed: false,
+            }],
             class: None,
         },
     ],

@@ -11,7 +11,7 @@ mod write;
 
 pub use error::WavError;
 pub use read::WavReader;
-pub use write::{WavWriter, same_file};
+pub use write::WavWriter;
 
 /// How a sample is stored.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]

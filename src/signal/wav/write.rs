@@ -1,15 +1,15 @@
 //! Writing a WAV file that appears whole or not at all.
 
-use std::fs::{self, File};
+use std::fs::File;
 use std::io::{self, BufWriter, Seek, SeekFrom, Write};
-use std::path::{Path, PathBuf};
+use std::path::Path;
 
 use rand::RngExt;
 use rand::rngs::Xoshiro256PlusPlus;
-use tempfile::NamedTempFile;
 
 use super::{SampleFormat, WavError, WavSpec, shown};
 use crate::signal::noise::stream;
+use crate::whole_file::{Refusal, WholeFile};
 
 /// A WAV file being written. It is built in a temporary file beside its target (or, for standard output, in an unnamed one) and
 /// takes its name in [`WavWriter::finish`]; dropped before that, nothing appears.
@@ -28,10 +28,7 @@ pub struct WavWriter {
 }
 
 enum Place {
-    File {
-        beside: NamedTempFile,
-        target: PathBuf,
-    },
+    File(WholeFile),
     StandardOutput,
 }
 
@@ -52,10 +49,14 @@ impl WavWriter {
         let (file, place) = if path.as_os_str() == "-" {
             (tempfile::tempfile().map_err(failed)?, Place::StandardOutput)
         } else {
-            let target = target(path, &name)?;
-            let beside = temporary_beside(&target).map_err(failed)?;
-            let file = beside.reopen().map_err(failed)?;
-            (file, Place::File { beside, target })
+            let (whole, file) = WholeFile::create(path).map_err(|e| match e {
+                Refusal::Path(reason) => WavError::Output {
+                    name: name.clone(),
+                    reason,
+                },
+                Refusal::Machine(e) => failed(e),
+            })?;
+            (file, Place::File(whole))
         };
         let header = waveadapter::WavSpec::new(
             usize::from(spec.channels),
@@ -153,12 +154,7 @@ impl WavWriter {
             pad(&mut file).map_err(failed)?;
         }
         match place {
-            Place::File { beside, target } => {
-                file.sync_all().map_err(failed)?;
-                drop(file);
-                beside.persist(&target).map_err(|e| failed(e.error))?;
-                sync_folder(&target).map_err(failed)
-            }
+            Place::File(whole) => whole.finish(file).map_err(failed),
             Place::StandardOutput => {
                 file.seek(SeekFrom::Start(0)).map_err(failed)?;
                 let mut out = io::stdout().lock();
@@ -178,93 +174,6 @@ fn pad(file: &mut File) -> io::Result<()> {
     file.seek(SeekFrom::Start(4))?;
     // The room kept below 4 GiB makes this fit.
     file.write_all(&(length as u32).to_le_bytes())
-}
-
-/// Whether two paths name one file (through links as well). False where either does not exist, and for `-`.
-pub fn same_file(a: impl AsRef<Path>, b: impl AsRef<Path>) -> bool {
-    let (a, b) = (a.as_ref(), b.as_ref());
-    if a.as_os_str() == "-" || b.as_os_str() == "-" {
-        return false;
-    }
-    let (Ok(one), Ok(other)) = (fs::canonicalize(a), fs::canonicalize(b)) else {
-        return false;
-    };
-    one == other || same_inode(&one, &other)
-}
-
-#[cfg(unix)]
-fn same_inode(a: &Path, b: &Path) -> bool {
-    use std::os::unix::fs::MetadataExt;
-    match (fs::metadata(a), fs::metadata(b)) {
-        (Ok(a), Ok(b)) => a.dev() == b.dev() && a.ino() == b.ino(),
-        _ => false,
-    }
-}
-
-#[cfg(not(unix))]
-fn same_inode(_: &Path, _: &Path) -> bool {
-    false
-}
-
-/// The file that will be replaced or made: links are followed, so that a link stays a link.
-fn target(path: &Path, name: &str) -> Result<PathBuf, WavError> {
-    let refuse = |reason: &str| WavError::Output {
-        name: name.to_owned(),
-        reason: reason.to_owned(),
-    };
-    if path.symlink_metadata().is_ok() {
-        return match fs::metadata(path) {
-            Ok(m) if m.is_file() && !m.permissions().readonly() => {
-                fs::canonicalize(path).map_err(|e| WavError::io(name, "opened", e))
-            }
-            Ok(m) if m.is_file() => Err(refuse("a file of that name exists and is read-only")),
-            Ok(m) if m.is_dir() => Err(refuse("it is a folder")),
-            Ok(_) => Err(refuse("it exists and is no regular file")),
-            Err(_) => Err(refuse("it is a link that leads nowhere")),
-        };
-    }
-    match (path.file_name(), path.parent()) {
-        (Some(_), Some(folder)) if folder.as_os_str().is_empty() || folder.is_dir() => {
-            Ok(path.to_owned())
-        }
-        (Some(_), Some(folder)) => Err(refuse(&format!("there is no folder {}", folder.display()))),
-        _ => Err(refuse("the path names no file")),
-    }
-}
-
-/// A temporary file in the target's folder, with the permissions a new file gets.
-fn temporary_beside(target: &Path) -> io::Result<NamedTempFile> {
-    let folder = match target.parent() {
-        Some(folder) if !folder.as_os_str().is_empty() => folder,
-        _ => Path::new("."),
-    };
-    let mut builder = tempfile::Builder::new();
-    builder.prefix(".harklight-").suffix(".part");
-    #[cfg(unix)]
-    {
-        use std::os::unix::fs::PermissionsExt;
-        builder.permissions(fs::Permissions::from_mode(0o666));
-    }
-    builder.tempfile_in(folder)
-}
-
-/// On Unix a rename is on the disk only once its folder is.
-#[cfg(unix)]
-fn sync_folder(target: &Path) -> io::Result<()> {
-    let folder = match target.parent() {
-        Some(folder) if !folder.as_os_str().is_empty() => folder,
-        _ => Path::new("."),
-    };
-    // A folder that may be written to and not read cannot be opened; the file is whole all the same.
-    match File::open(folder) {
-        Ok(folder) => folder.sync_all(),
-        Err(_) => Ok(()),
-    }
-}
-
-#[cfg(not(unix))]
-fn sync_folder(_: &Path) -> io::Result<()> {
-    Ok(())
 }
 
 fn container(format: SampleFormat) -> waveadapter::SampleFormat {

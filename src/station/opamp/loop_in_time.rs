@@ -14,7 +14,7 @@ const AT_ONCE: f64 = 1e4;
 /// The linear loop is integrated exactly between samples; what the input pair and the slew limit take away from it is a
 /// further input of the same rule (an implicit exponential Adams–Moulton step). As the pair's slope never exceeds the
 /// tangent's, the whole is never stiffer than the linear loop and the step is stable at any setting.
-pub(super) struct AmplifierRunner {
+pub(in crate::station) struct AmplifierRunner {
     pub gain: f64,
     pub input: FirstOrder,
     pub noises: Vec<NoiseSource>,

@@ -3,6 +3,7 @@
 mod loop_in_time;
 mod part;
 
+pub(super) use loop_in_time::AmplifierRunner;
 pub use part::{OpampPart, OutputRest};
 
 use num_complex::Complex64;
@@ -16,7 +17,6 @@ use crate::physics::noise::johnson;
 use crate::physics::opamp::closed_loop_bandwidth;
 use crate::quantity::Dimension;
 use crate::signal::pole::FirstOrderLaw;
-use loop_in_time::AmplifierRunner;
 
 /// One amplifier with its feedback. A stage of several equal amplifiers is several of these in a row.
 ///

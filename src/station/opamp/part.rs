@@ -81,7 +81,8 @@ impl OutputRest {
 }
 
 impl OpampPart {
-    /// From a section that holds the part's keys, its supply and reference (half a single supply, 0 of a split one).
+    /// From a section that holds the part's keys, its supply and reference (half a single supply, 0 of a split one). A key that
+    /// such a section does not have is an ideal part's 0: a power amplifier's swing, offset or input current.
     pub fn new(section: &Section) -> Self {
         let supply = match *section.numbers("supply") {
             [low, high] => (low, high),
@@ -90,23 +91,24 @@ impl OpampPart {
         };
         let split = section.numbers("supply").len() == 2;
         let middle = if split { 0.0 } else { supply.1 / 2.0 };
-        let (gain_bandwidth, slew) = (section.number("gbw"), section.number("slew"));
+        let number = |key: &str| section.key(key).map_or(0.0, |_| section.number(key));
+        let (gain_bandwidth, slew) = (number("gbw"), number("slew"));
         Self {
             gain_bandwidth,
             slew,
             input_linear: section
                 .optional("input_linear")
                 .unwrap_or(slew / (TAU * gain_bandwidth)),
-            voltage_noise: section.number("noise_voltage"),
-            voltage_corner: section.number("noise_voltage_corner"),
-            current_noise: section.number("noise_current"),
-            current_corner: section.number("noise_current_corner"),
-            output_current: section.number("output_current"),
-            offset: section.number("offset"),
-            bias_current: section.number("bias_current"),
-            input_capacitance: section.number("input_capacitance"),
+            voltage_noise: number("noise_voltage"),
+            voltage_corner: number("noise_voltage_corner"),
+            current_noise: number("noise_current"),
+            current_corner: number("noise_current_corner"),
+            output_current: number("output_current"),
+            offset: number("offset"),
+            bias_current: number("bias_current"),
+            input_capacitance: number("input_capacitance"),
             reference: section.optional("reference").unwrap_or(middle),
-            swing: (section.number("swing_low"), section.number("swing_high")),
+            swing: (number("swing_low"), number("swing_high")),
             supply,
         }
     }
@@ -154,8 +156,9 @@ impl OpampPart {
                 (rail, name)
             }
         };
-        let up = pick(high - rest, by_current(1.0), "upper rail");
-        let down = pick(rest - low, by_current(-1.0), "lower rail");
+        // A load may drag an output that is short of current beyond its swing: then there is no room at all that way.
+        let up = pick((high - rest).max(0.0), by_current(1.0), "upper rail");
+        let down = pick((rest - low).max(0.0), by_current(-1.0), "lower rail");
         OutputRest {
             rest,
             excess: asked - rest,

@@ -1,14 +1,33 @@
-//! The photodiode as a part, its current and capacitance around its rest.
+//! What all detectors share, and the photodiode as a part, its current and capacitance around its rest.
 
 use crate::design::Section;
 use crate::physics::photodiode::{self, Depletion, Junction};
+
+/// What a detector makes of light, whatever its kind.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Sensitivity {
+    /// Light-sensitive area of all detectors together, m².
+    pub area: f64,
+    /// Primary photocurrent for light, A/W, at the emitter's wavelength.
+    pub responsivity: f64,
+}
+
+impl Sensitivity {
+    /// From `[receiver.detector]`; `wavelength` of the emitter in m.
+    pub fn new(section: &Section, wavelength: f64) -> Self {
+        Self {
+            area: section.number("count") * section.number("area"),
+            responsivity: section.optional("responsivity").unwrap_or_else(|| {
+                photodiode::responsivity(section.number("quantum_efficiency"), wavelength)
+            }),
+        }
+    }
+}
 
 /// One photodiode, or several equal ones in parallel.
 #[derive(Debug, Clone)]
 pub struct Detector {
     pub path: String,
-    /// Light-sensitive area of all together, m².
-    pub area: f64,
     /// A/W at the emitter's wavelength.
     pub responsivity: f64,
     pub junction: Junction,
@@ -19,13 +38,9 @@ impl Detector {
     /// From `[receiver.detector]`; `wavelength` of the emitter in m, `temperature` in K, `vt` the thermal voltage.
     pub fn new(section: &Section, wavelength: f64, temperature: f64, vt: f64) -> Self {
         let count = section.number("count");
-        let responsivity = section.optional("responsivity").unwrap_or_else(|| {
-            photodiode::responsivity(section.number("quantum_efficiency"), wavelength)
-        });
         Self {
             path: section.path.clone(),
-            area: count * section.number("area"),
-            responsivity,
+            responsivity: Sensitivity::new(section, wavelength).responsivity,
             junction: Junction {
                 dark: count * photodiode::dark_current(section.number("dark_current"), temperature),
                 saturation: count * section.number("saturation_current"),

@@ -137,12 +137,12 @@ impl Model for LoadHead {
     fn operating_point(&self) -> Vec<Reading> {
         vec![
             Reading {
-                name: "photocurrent, signal",
+                name: "signal photocurrent",
                 value: self.light.signal,
                 dimension: Dimension::Ampere,
             },
             Reading {
-                name: "photocurrent, ambient",
+                name: "ambient photocurrent",
                 value: self.light.ambient,
                 dimension: Dimension::Ampere,
             },

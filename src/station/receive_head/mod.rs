@@ -2,14 +2,72 @@
 
 mod detector;
 mod load;
+mod photocell;
+mod phototransistor;
 mod transimpedance;
 
-pub use detector::Detector;
+pub use detector::{Detector, Sensitivity};
 pub use load::LoadHead;
+pub use photocell::PhotocellHead;
+pub use phototransistor::PhototransistorHead;
 pub use transimpedance::TransimpedanceHead;
 
-use super::Conditions;
 use super::noise::{Contributor, NoiseSource};
+use super::wiring::{Drive, Load};
+use super::{Conditions, Model};
+use crate::design::Section;
+use crate::physics::constants::thermal_voltage;
+
+/// The receive head of a design, by the kinds of its detector and its front end, and what it offers to the `next` stage.
+///
+/// `sensitivity` is the detector's at `wavelength` (m), `light` what stands on it at rest, `temperature` in K.
+pub fn receive_head(
+    front_end: &Section,
+    detector: &Section,
+    (sensitivity, wavelength): (Sensitivity, f64),
+    light: LightAtRest,
+    next: &Load,
+    temperature: f64,
+) -> (Box<dyn Model>, Drive) {
+    let diode = || {
+        Detector::new(
+            detector,
+            wavelength,
+            temperature,
+            thermal_voltage(temperature),
+        )
+    };
+    match (detector.kind.as_deref(), front_end.kind.as_deref()) {
+        (Some("phototransistor"), _) => {
+            let head = PhototransistorHead::new(
+                front_end,
+                detector,
+                sensitivity,
+                light,
+                next,
+                temperature,
+            );
+            let drive = head.drive();
+            (Box::new(head), drive)
+        }
+        (Some("photocell"), _) => {
+            let head =
+                PhotocellHead::new(front_end, detector, sensitivity, light, next, temperature);
+            let drive = head.drive();
+            (Box::new(head), drive)
+        }
+        (_, Some("transimpedance")) => {
+            let head = TransimpedanceHead::new(front_end, diode(), light, next, temperature);
+            let drive = head.drive();
+            (Box::new(head), drive)
+        }
+        _ => {
+            let head = LoadHead::new(front_end, diode(), light, next, temperature);
+            let drive = head.drive();
+            (Box::new(head), drive)
+        }
+    }
+}
 
 /// The light on the detector at rest, as photocurrents in A.
 #[derive(Debug, Clone, Copy, PartialEq)]

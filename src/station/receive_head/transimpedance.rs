@@ -175,12 +175,12 @@ impl Model for TransimpedanceHead {
     fn operating_point(&self) -> Vec<Reading> {
         let mut readings = vec![
             Reading {
-                name: "photocurrent, signal",
+                name: "signal photocurrent",
                 value: self.light.signal,
                 dimension: Dimension::Ampere,
             },
             Reading {
-                name: "photocurrent, ambient",
+                name: "ambient photocurrent",
                 value: self.light.ambient,
                 dimension: Dimension::Ampere,
             },

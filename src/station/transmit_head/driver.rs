@@ -1,8 +1,14 @@
 //! The driver: volts to current through the emitter.
 
+mod transistor;
+
 use super::emitter::Emitter;
 use crate::design::Section;
 use crate::physics::diode::SeriesLoop;
+use crate::signal::pole::FirstOrderLaw;
+use crate::station::noise::Contributor;
+use crate::station::wiring::{Drive, Load};
+use transistor::Modulator;
 
 /// A driver with its emitter's voltage in the loop.
 #[derive(Debug, Clone)]
@@ -26,11 +32,29 @@ enum Kind {
         /// What the supply allows the emitter when it is coldest, A: always allowed.
         surely: f64,
     },
+    /// A common emitter.
+    Transistor(Box<Modulator>),
 }
 
 impl Driver {
-    /// From its section; `behind` is the resistance that drives it, Ω, `vt` the thermal voltage.
-    pub fn new(section: &Section, emitter: &Emitter, behind: f64, vt: f64) -> Self {
+    /// What it shows to the stage before it; `temperature` in K.
+    pub fn input_load(section: &Section, temperature: f64) -> Load {
+        if section.kind.as_deref() == Some("transistor") {
+            return Modulator::input_load(section, temperature);
+        }
+        Load::resistor(section.number("input_resistance"), 0.0)
+    }
+
+    /// From its section, behind `before`; `vt` the thermal voltage, `temperature` in K.
+    pub fn new(
+        section: &Section,
+        emitter: &Emitter,
+        before: &Drive,
+        vt: f64,
+        temperature: f64,
+    ) -> Self {
+        let load = Self::input_load(section, temperature);
+        let behind = before.series * before.division(load.signal_conductance());
         let supply = section.number("supply");
         let kind = match section.kind.as_deref() {
             Some("current-sink") => {
@@ -45,6 +69,12 @@ impl Driver {
                     surely: f64::NEG_INFINITY,
                 }
             }
+            Some("transistor") => Kind::Transistor(Box::new(Modulator::new(
+                section,
+                emitter,
+                before,
+                temperature,
+            ))),
             _ => {
                 let resistor = section.number("resistor");
                 Kind::SeriesResistor {
@@ -60,20 +90,22 @@ impl Driver {
         match self.kind {
             Kind::SeriesResistor { .. } => "series resistor",
             Kind::CurrentSink { .. } => "current sink",
+            Kind::Transistor(_) => "transistor",
         }
     }
 
     /// Tells the driver the most that the emitter's forward voltage can lie above its rest, V (its junction then is as cold as
     /// the surroundings), so that the supply's limit need not be reckoned for every sample.
     pub fn set_coldest(&mut self, heat_voltage: f64) {
-        if let Kind::CurrentSink {
-            compliance,
-            room,
-            surely,
-            ..
-        } = &mut self.kind
-        {
-            *surely = compliance.current(*room - heat_voltage);
+        match &mut self.kind {
+            Kind::SeriesResistor { .. } => {}
+            Kind::CurrentSink {
+                compliance,
+                room,
+                surely,
+                ..
+            } => *surely = compliance.current(*room - heat_voltage),
+            Kind::Transistor(modulator) => modulator.set_coldest(heat_voltage),
         }
     }
 
@@ -105,6 +137,39 @@ impl Driver {
                 let allowed = compliance.current(room - heat_voltage).max(0.0);
                 (asked.min(allowed), asked >= allowed)
             }
+            Kind::Transistor(modulator) => modulator.current(input - rest, heat_voltage, near),
+        }
+    }
+
+    /// Volts at the driver's own input for each volt at the node before, where that is not the divider's plain share.
+    pub fn input_gain(&self) -> Option<f64> {
+        match &self.kind {
+            Kind::Transistor(modulator) => Some(modulator.input_gain()),
+            _ => None,
+        }
+    }
+
+    /// Low-pass between the node before and the law.
+    pub fn input_pole(&self) -> FirstOrderLaw {
+        match &self.kind {
+            Kind::Transistor(modulator) => modulator.input_pole(),
+            _ => FirstOrderLaw::low_pass(f64::INFINITY),
+        }
+    }
+
+    /// Noise voltages besides the resistances', before the input pole and behind it.
+    pub fn noises(&self) -> [Vec<Contributor>; 2] {
+        match &self.kind {
+            Kind::Transistor(modulator) => modulator.noises(),
+            _ => [Vec::new(), Vec::new()],
+        }
+    }
+
+    /// What an engineer ought to know.
+    pub fn warnings(&self) -> Vec<String> {
+        match &self.kind {
+            Kind::Transistor(modulator) => modulator.warnings(),
+            _ => Vec::new(),
         }
     }
 
@@ -113,6 +178,7 @@ impl Driver {
         match &self.kind {
             Kind::SeriesResistor { .. } => 0.0,
             Kind::CurrentSink { bias, softness, .. } => soft_turn_off(*bias, *softness),
+            Kind::Transistor(modulator) => modulator.bias(),
         }
     }
 
@@ -138,6 +204,7 @@ impl Driver {
                     slope / (1.0 + (-bias / softness).exp())
                 }
             }
+            Kind::Transistor(modulator) => modulator.slope(current),
         }
     }
 
@@ -145,7 +212,7 @@ impl Driver {
     pub fn heat_voltage(&self, emitter: &Emitter) -> f64 {
         match self.kind {
             Kind::SeriesResistor { .. } => -emitter.drift(),
-            Kind::CurrentSink { .. } => 0.0,
+            Kind::CurrentSink { .. } | Kind::Transistor(_) => 0.0,
         }
     }
 
@@ -156,6 +223,7 @@ impl Driver {
                 vec![("resistor", resistor + emitter.resistance())]
             }
             Kind::CurrentSink { sense, .. } => vec![("sense", sense)],
+            Kind::Transistor(_) => Vec::new(),
         }
     }
 }

@@ -7,6 +7,8 @@ use crate::station::{Conditions, Curves, Events, Runner};
 
 /// A current below this share of the bias counts as dark.
 const DARK: f64 = 0.01;
+/// A junction's heat beyond its rest goes no further than this, K.
+const RUNAWAY: f64 = 1000.0;
 
 /// Builds the runner of `head`.
 pub fn runner(head: &TransmitHead, conditions: &Conditions) -> Box<dyn Runner> {
@@ -22,6 +24,8 @@ pub fn runner(head: &TransmitHead, conditions: &Conditions) -> Box<dyn Runner> {
         division: head.division,
         flux: head.rest.flux,
         at_input: noise::sources(&head.at_input, conditions),
+        input_pole: head.input_pole.section(conditions.rate),
+        behind_pole: noise::sources(&head.behind_pole, conditions),
         intensity: head.intensity.source(conditions),
         carriers,
         relative: Vec::new(),
@@ -54,6 +58,8 @@ struct HeadRunner {
     division: f64,
     flux: f64,
     at_input: Vec<NoiseSource>,
+    input_pole: FirstOrder,
+    behind_pole: Vec<NoiseSource>,
     intensity: Option<NoiseSource>,
     carriers: FirstOrder,
     relative: Vec<f64>,
@@ -86,6 +92,8 @@ pub(super) struct Junction {
     heat: f64,
     /// Dissipated power at rest, W.
     power: f64,
+    /// Furthest that the heat goes either way, K.
+    most: f64,
     weights: StepWeights,
     last: f64,
     before: f64,
@@ -104,6 +112,7 @@ impl Junction {
             }),
             heat: pick(resistance / time),
             power: head.rest.forward_voltage * head.rest.current - head.rest.flux,
+            most: head.rest.heating.abs() + RUNAWAY,
             weights: StepWeights::new(pick(1.0 / time), 1.0 / conditions.rate),
             last: 0.0,
             before: 0.0,
@@ -117,10 +126,12 @@ impl Junction {
             let power = current * emitter.forward_voltage(current, self.warmth) - flux;
             let forcing = self.heat * (power - self.power);
             let w = &self.weights;
-            self.warmth = w.decay * self.warmth
+            let warmth = w.decay * self.warmth
                 + w.now * forcing
                 + w.last * self.last
                 + w.before * self.before;
+            // A junction that runs away ends somewhere; the model's own range ended long before.
+            self.warmth = warmth.clamp(-self.most, self.most);
             self.before = self.last;
             self.last = forcing;
         }
@@ -157,6 +168,8 @@ impl Runner for HeadRunner {
     fn run(&mut self, block: &mut [f64], _: &[f64]) {
         block.iter_mut().for_each(|x| *x *= self.division);
         noise::add_all(&mut self.at_input, block);
+        self.input_pole.run(block);
+        noise::add_all(&mut self.behind_pole, block);
         match &mut self.law {
             Law::Straight(heated) => heated.run(block),
             Law::Bent(bent) => {

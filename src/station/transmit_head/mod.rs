@@ -31,8 +31,11 @@ pub struct TransmitHead {
     division: f64,
     rest: Rest,
     tangent: Tangent,
-    /// Noise voltages in series with the driver's input.
+    /// Low-pass of the driver's own input.
+    input_pole: FirstOrderLaw,
+    /// Noise voltages in series with the driver's input, before that pole and behind it.
     at_input: Vec<Contributor>,
+    behind_pole: Vec<Contributor>,
     /// Relative noise of the light, 1/Hz.
     intensity: Contributor,
     servo: Option<Servo>,
@@ -62,15 +65,14 @@ struct Tangent {
     heated: FirstOrderLaw,
     /// Current against driver volts, S.
     current: f64,
+    /// Whether the junction's heat feeds itself.
+    runs_away: bool,
 }
 
 impl TransmitHead {
-    /// What the driver shows to the stage before it.
-    pub fn input_load(driver: &Section) -> Load {
-        Load::resistor(
-            driver.optional("input_resistance").unwrap_or(f64::INFINITY),
-            0.0,
-        )
+    /// What the driver shows to the stage before it; `temperature` in K.
+    pub fn input_load(driver: &Section, temperature: f64) -> Load {
+        Driver::input_load(driver, temperature)
     }
 
     /// From `[transmitter.driver]` and `[transmitter.emitter]`, behind `before`; `temperature` in K.
@@ -80,9 +82,7 @@ impl TransmitHead {
         before: &Drive,
         temperature: f64,
     ) -> Self {
-        let load = Self::input_load(driver_section);
-        let division = before.division(load.signal_conductance());
-        let behind = before.series * division;
+        let load = Self::input_load(driver_section, temperature);
         let input = if before.blocked.is_some() {
             before.rest
         } else {
@@ -90,7 +90,10 @@ impl TransmitHead {
         };
         let vt = thermal_voltage(temperature);
         let mut emitter = Emitter::new(emitter_section, vt, temperature);
-        let mut driver = Driver::new(driver_section, &emitter, behind, vt);
+        let mut driver = Driver::new(driver_section, &emitter, before, vt, temperature);
+        let division = driver
+            .input_gain()
+            .unwrap_or_else(|| before.division(load.signal_conductance()));
 
         let current = driver.current(input, input, 0.0, 0.0).0;
         let forward_voltage = emitter.forward_voltage(current, 0.0);
@@ -111,6 +114,7 @@ impl TransmitHead {
         let servo = Servo::new(driver_section, &driver, &emitter, &rest, &tangent);
 
         let driver_name = &driver_section.path;
+        let [outer, behind_pole] = driver.noises();
         let at_input = driver
             .noisy_resistances(&emitter)
             .into_iter()
@@ -120,6 +124,7 @@ impl TransmitHead {
                     crate::physics::noise::johnson(r, temperature),
                 )
             })
+            .chain(outer)
             .collect();
         let intensity = Contributor::white(
             format!("{}.intensity", emitter_section.path),
@@ -127,7 +132,7 @@ impl TransmitHead {
                 .optional("intensity_noise")
                 .map_or(0.0, |db| 10f64.powf(db / 10.0)),
         );
-        let mut warnings = Vec::new();
+        let mut warnings = driver.warnings();
         let limit = emitter.max_current;
         if current > limit {
             warnings.push(format!(
@@ -154,6 +159,12 @@ impl TransmitHead {
                 Dimension::Ampere.show(driver.asked_at_rest())
             ));
         }
+        if tangent.runs_away {
+            warnings.push(format!(
+                "{}: the junction runs away: its heat lowers the forward voltage by more than it takes to keep itself up; small-signal figures leave the heat out",
+                emitter_section.path
+            ));
+        }
         if current <= 0.0 {
             warnings.push(format!(
                 "{driver_name}: no current flows at rest; the emitter is dark"
@@ -169,12 +180,14 @@ impl TransmitHead {
         Self {
             path: "transmitter.emitter".into(),
             supply: driver.supply,
+            input_pole: driver.input_pole(),
             driver,
             emitter,
             division,
             rest,
             tangent,
             at_input,
+            behind_pole,
             intensity,
             servo,
             warnings,
@@ -239,7 +252,9 @@ fn tangent(driver: &Driver, emitter: &Emitter, rest: &Rest) -> Tangent {
     let (resistance, time) = emitter.thermal();
     let direct = flux_by_current * current;
     let slow = flux_by_current * by_heat + flux_by_heat;
-    let heated = if resistance > 0.0 && time > 0.0 {
+    // At a loop gain of 1 and more the heat feeds itself: there is no tangent to settle on.
+    let runs_away = resistance * b >= 1.0;
+    let heated = if resistance > 0.0 && time > 0.0 && !runs_away {
         FirstOrderLaw {
             direct,
             residue: slow * resistance * a / time,
@@ -252,7 +267,11 @@ fn tangent(driver: &Driver, emitter: &Emitter, rest: &Rest) -> Tangent {
             rate: 1.0,
         }
     };
-    Tangent { heated, current }
+    Tangent {
+        heated,
+        current,
+        runs_away,
+    }
 }
 
 impl Model for TransmitHead {
@@ -317,7 +336,7 @@ impl Model for TransmitHead {
             .servo
             .as_ref()
             .map_or(1.0.into(), |s| s.follows(frequency, open));
-        self.division * open * follows
+        self.division * self.input_pole.at(frequency) * open * follows
     }
 
     fn noise(&self, frequency: f64) -> Vec<Share> {
@@ -326,11 +345,11 @@ impl Model for TransmitHead {
             .servo
             .as_ref()
             .map_or(1.0, |s| s.leaves(frequency, open).norm_sqr());
-        let by_input = open.norm_sqr() * left;
-        let mut shares: Vec<Share> = self
-            .at_input
-            .iter()
-            .map(|c| c.share(frequency, by_input))
+        let behind = open.norm_sqr() * left;
+        let by_input = behind * self.input_pole.at(frequency).norm_sqr();
+        let at_input = self.at_input.iter().map(|c| c.share(frequency, by_input));
+        let mut shares: Vec<Share> = at_input
+            .chain(self.behind_pole.iter().map(|c| c.share(frequency, behind)))
             .collect();
         shares.push(
             self.intensity

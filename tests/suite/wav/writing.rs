@@ -3,7 +3,8 @@
 use std::fs;
 use std::path::Path;
 
-use harklight::signal::wav::{SampleFormat, WavError, WavReader, WavSpec, WavWriter, same_file};
+use harklight::signal::wav::{SampleFormat, WavError, WavReader, WavSpec, WavWriter};
+use harklight::whole_file::same_file;
 use tempfile::TempDir;
 
 use super::read_all;

@@ -5,7 +5,7 @@
 
 use super::{Balance, Servo};
 use crate::signal::implicit::tr_bdf2;
-use crate::signal::pole::StepWeights;
+use crate::signal::pole::{FirstOrder, StepWeights};
 use crate::station::noise::{self, NoiseSource};
 use crate::station::transmit_head::in_time::{Junction, count};
 use crate::station::transmit_head::{Driver, Emitter, TransmitHead};
@@ -51,6 +51,9 @@ pub fn runner(servo: &Servo, head: &TransmitHead, conditions: &Conditions) -> Bo
     Box::new(ServoRunner {
         division: head.division,
         at_input: noise::sources(&head.at_input, conditions),
+        input_pole: head.input_pole.section(conditions.rate),
+        noise_pole: head.input_pole.section(conditions.rate),
+        behind_pole: noise::sources(&head.behind_pole, conditions),
         intensity: head.intensity.source(conditions),
         inside: Vec::new(),
         relative: Vec::new(),
@@ -80,6 +83,10 @@ pub fn runner(servo: &Servo, head: &TransmitHead, conditions: &Conditions) -> Bo
 struct ServoRunner {
     division: f64,
     at_input: Vec<NoiseSource>,
+    /// The driver's own pole before the loop: of the signal, which the loop is asked for, and of the noise, which it is not.
+    input_pole: FirstOrder,
+    noise_pole: FirstOrder,
+    behind_pole: Vec<NoiseSource>,
     intensity: Option<NoiseSource>,
     inside: Vec<f64>,
     relative: Vec<f64>,
@@ -93,12 +100,14 @@ impl Runner for ServoRunner {
             buffer.clear();
             buffer.resize(block.len(), 0.0);
         }
+        block.iter_mut().for_each(|x| *x *= self.division);
+        self.input_pole.run(block);
         noise::add_all(&mut self.at_input, &mut self.inside);
+        self.noise_pole.run(&mut self.inside);
+        noise::add_all(&mut self.behind_pole, &mut self.inside);
         noise::add_all(self.intensity.as_mut_slice(), &mut self.relative);
         for ((x, e), n) in block.iter_mut().zip(&self.inside).zip(&self.relative) {
-            *x = self
-                .monitor
-                .step(self.division * *x, *e, *n, &mut self.events);
+            *x = self.monitor.step(*x, *e, *n, &mut self.events);
         }
     }
 

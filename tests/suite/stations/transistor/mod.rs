@@ -1,0 +1,9 @@
+//! The transistor stage and the transistor modulator.
+
+mod bench;
+mod circuit;
+mod faces;
+mod golden;
+mod harmonics;
+mod modulator;
+mod noise;
