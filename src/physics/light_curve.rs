@@ -193,9 +193,10 @@ mod tests {
                 .map(|i| (curve.flux(i) - law.flux(i)).abs())
                 .fold(0.0, f64::max)
         };
-        let (coarse, fine) = (error(500), error(1000));
-        // The slope at the origin errs by h²/3 of P''' there, 6η/I_low², and the cubic carries 4/27·h of it.
-        let bound = 0.1e-3f64.powi(3) * 6.0 * law.efficacy / 1e-6 / 3.0 * 4.0 / 27.0;
+        let (coarse, fine) = (error(2000), error(4000));
+        // In the first piece P''' is 6η/I_low². Its slopes err by h²/3 and −h²/6 of that, of which the cubic makes
+        // h·x(1 − x)(2 − x)/6, at most 0.0642·h.
+        let bound = 25e-6f64.powi(3) * 6.0 * law.efficacy / 1e-6 * 0.0642;
         assert!(fine < bound, "{fine} {bound}");
         assert!((6.5..9.5).contains(&(coarse / fine)), "{}", coarse / fine);
     }

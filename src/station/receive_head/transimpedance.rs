@@ -13,6 +13,7 @@ use super::detector::{AroundRest, Detector};
 use super::{LightAtRest, MovingShot};
 use crate::design::Section;
 use crate::physics::noise::{johnson_current, shot};
+use crate::physics::opamp::SlopeLaw;
 use crate::quantity::Dimension;
 use crate::station::noise::{self, Contributor};
 use crate::station::opamp::{OpampPart, OutputRest};
@@ -20,6 +21,7 @@ use crate::station::wiring::{Drive, Load};
 use crate::station::{Conditions, Curves, Limit, Model, Reading, Runner, Share};
 
 mod in_time;
+mod near;
 mod servo;
 
 use servo::{AmbientServo, Quiescent};

@@ -6,6 +6,7 @@
 
 use std::f64::consts::TAU;
 
+use super::near::Near;
 use super::servo::Integrator;
 use super::{AmbientServo, AroundRest, Conditions, Curves, MovingShot, TransimpedanceHead, noise};
 use crate::physics::opamp::SlopeLaw;
@@ -57,11 +58,28 @@ pub fn runner(head: &TransimpedanceHead, conditions: &Conditions) -> Box<dyn Run
         },
         low,
         high,
+        near: None,
         k: tr_bdf2::IMPLICIT / conditions.rate,
         now: State::default(),
         light: [0.0; 2],
         voltage: [0.0; 2],
     };
+    if amplifier.push == 0.0 {
+        let passive = (
+            amplifier.feedback,
+            amplifier.feedback_capacitor,
+            amplifier.capacitance,
+        );
+        amplifier.near = Near::new(
+            (&head.detector, bias),
+            law,
+            passive,
+            amplifier.servo,
+            (low, high),
+            amplifier.k,
+            straight,
+        );
+    }
     if conditions.cold {
         amplifier.now.output = -(head.output.rest).clamp(low, high);
         amplifier.now.charge = -amplifier.feedback_capacitor * amplifier.now.output;
@@ -130,6 +148,7 @@ struct Loop {
     servo: Integrator,
     low: f64,
     high: f64,
+    near: Option<Near>,
     /// Weight of the implicit stages, s.
     k: f64,
     now: State,
@@ -139,30 +158,51 @@ struct Loop {
 
 /// State at a moment, in deviations from rest.
 #[derive(Debug, Clone, Copy, Default)]
-struct State {
-    input: f64,
-    output: f64,
-    charge: f64,
-    /// dq/dt, A.
-    flow: f64,
-    /// dy/dt, V/s.
-    slope: f64,
-    /// The ambient servo's output, V, and its slope, V/s.
-    servo: f64,
-    servo_slope: f64,
+pub(super) struct State {
+    pub input: f64,
+    pub output: f64,
+    pub charge: f64,
+    /// The ambient servo's output, V.
+    pub servo: f64,
+    /// What the last stage's implicit part k·d/dt moved, in the same units.
+    pub output_move: f64,
+    pub charge_move: f64,
+    pub servo_move: f64,
+}
+
+impl State {
+    /// What the trapezoid stage starts from.
+    #[inline(always)]
+    pub fn onwards(&self) -> Known {
+        Known {
+            charge: self.charge + self.charge_move,
+            output: self.output + self.output_move,
+            servo: self.servo + self.servo_move,
+        }
+    }
+
+    /// What the stage of the backward difference starts from, this state midway and `was` the first.
+    #[inline(always)]
+    pub fn after(&self, was: &Self) -> Known {
+        let blend = |middle: f64, was: f64| tr_bdf2::MIDDLE * middle + tr_bdf2::FIRST * was;
+        Known {
+            charge: blend(self.charge, was.charge),
+            output: blend(self.output, was.output),
+            servo: blend(self.servo, was.servo),
+        }
+    }
 }
 
 /// What an implicit stage starts from.
 #[derive(Clone, Copy)]
-struct Known {
-    charge: f64,
-    output: f64,
-    servo: f64,
+pub(super) struct Known {
+    pub charge: f64,
+    pub output: f64,
+    pub servo: f64,
 }
 
 impl Loop {
     /// One implicit stage from the known parts of charge, output and servo, under light `i` (A) and noise `e` (V).
-    #[inline]
     fn solve(&self, known: Known, i: f64, e: f64, start: f64) -> State {
         let Known {
             charge,
@@ -181,15 +221,15 @@ impl Loop {
             let y = free.clamp(self.low, self.high);
             let diode = self.diode.at(x);
             // Held at a limit, the output stands still.
-            let (slope, follows) = if y == free {
-                (rate, -k * steep)
+            let (output_move, follows) = if y == free {
+                (k * rate, -k * steep)
             } else {
                 (0.0, 0.0)
             };
-            let rise = integrator.rate * (y + integrator.push);
-            let asked = servo + k * rise;
+            let rise = k * integrator.rate * (y + integrator.push);
+            let asked = servo + rise;
             let z = asked.clamp(integrator.low, integrator.high);
-            let (servo_slope, adds) = if z == asked {
+            let (servo_move, adds) = if z == asked {
                 (rise, k * integrator.rate * follows)
             } else {
                 (0.0, 0.0)
@@ -198,13 +238,13 @@ impl Loop {
                 input: x,
                 output: y,
                 charge: diode.charge + self.capacitance * x + self.feedback_capacitor * (x - y),
-                flow: -(i
-                    + diode.current
-                    + (x - y) * self.feedback
-                    + (x - z) * integrator.conductance),
-                slope,
                 servo: z,
-                servo_slope,
+                output_move,
+                charge_move: -k
+                    * (i + diode.current
+                        + (x - y) * self.feedback
+                        + (x - z) * integrator.conductance),
+                servo_move,
             };
             slopes = (
                 diode.capacitance + self.capacitance + self.feedback_capacitor * (1.0 - follows),
@@ -215,7 +255,7 @@ impl Loop {
                 adds,
             );
             (
-                state.charge - k * state.flow - charge,
+                state.charge - state.charge_move - charge,
                 slopes.0 + k * slopes.1,
             )
         });
@@ -225,50 +265,44 @@ impl Loop {
             input: x,
             output: state.output + slopes.2 * step,
             charge: state.charge + slopes.0 * step,
-            flow: state.flow - slopes.1 * step,
-            slope: state.slope + slopes.2 / k * step,
             servo: state.servo + slopes.3 * step,
-            servo_slope: state.servo_slope + slopes.3 / k * step,
+            output_move: state.output_move + slopes.2 * step,
+            charge_move: state.charge_move - k * slopes.1 * step,
+            servo_move: state.servo_move + slopes.3 * step,
         }
     }
 
     /// One sample: the output away from rest, V.
     #[inline]
     fn step(&mut self, light: f64, voltage: f64, events: &mut Events) -> f64 {
-        let (i, e) = (
+        let now = (light, voltage);
+        let midway = (
             tr_bdf2::midway(light, self.light[0], self.light[1]),
             tr_bdf2::midway(voltage, self.voltage[0], self.voltage[1]),
         );
-        let was = self.now;
-        let middle = self.solve(
-            Known {
-                charge: was.charge + self.k * was.flow,
-                output: was.output + self.k * was.slope,
-                servo: was.servo + self.k * was.servo_slope,
-            },
-            i,
-            e,
-            was.input,
-        );
-        let blend = |middle: f64, was: f64| tr_bdf2::MIDDLE * middle + tr_bdf2::FIRST * was;
-        let end = self.solve(
-            Known {
-                charge: blend(middle.charge, was.charge),
-                output: blend(middle.output, was.output),
-                servo: blend(middle.servo, was.servo),
-            },
-            light,
-            voltage,
-            middle.input,
-        );
         self.light = [light, self.light[0]];
         self.voltage = [voltage, self.voltage[0]];
+        if let Some(near) = &self.near
+            && let Some(end) = near.step(&self.now, midway, now)
+        {
+            self.now = end;
+        } else {
+            self.step_anywhere(midway, now, events);
+        }
+        self.now.output
+    }
+
+    /// One sample wherever the loop stands: an output held, a diode that conducts, a pair that slews.
+    #[inline(never)]
+    fn step_anywhere(&mut self, midway: (f64, f64), now: (f64, f64), events: &mut Events) {
+        let was = self.now;
+        let middle = self.solve(was.onwards(), midway.0, midway.1, was.input);
+        let end = self.solve(middle.after(&was), now.0, now.1, middle.input);
         self.now = end;
         if end.output == self.low || end.output == self.high {
             events.clipped += 1;
-        } else if end.slope.abs() > 0.99 * self.law.slew {
+        } else if end.output_move.abs() > 0.99 * self.law.slew * self.k {
             events.slewing += 1;
         }
-        end.output
     }
 }

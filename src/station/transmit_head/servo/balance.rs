@@ -113,7 +113,7 @@ mod tests {
 
     #[test]
     fn finds_its_point_on_curves_of_every_kind() {
-        let soft = |u: f64| 0.025 * (u / 0.025).exp().ln_1p() - 0.025 * 2f64.ln();
+        let soft = |u: f64| u.max(0.0) + 0.025 * ((-u.abs() / 0.025).exp().ln_1p() - 2f64.ln());
         let step = |u: f64| if u < 0.3 { 0.0 } else { 100.0 * (u - 0.3) };
         let flat = |u: f64| u.tanh();
         for (k, p) in [&soft as &dyn Fn(f64) -> f64, &step, &flat]
