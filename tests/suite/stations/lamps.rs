@@ -132,10 +132,13 @@ fn check_pulses(rate: f64, frequency: f64, duty: f64, edge: f64, phase: f64) {
         .band_power_without(20.0, 0.25 * rate, &lines)
         .sqrt();
     assert!(rest < 1e-6, "{keys} aliases {:.1} dB", 20.0 * rest.log10());
-    let paper = link.lamps()[0].lines().take(lines.len());
-    for ((f, amplitude), line) in paper.zip(&lines) {
-        assert!((f / line - 1.0).abs() < 1e-12);
-        let n = f / frequency;
+    // On paper the same lines, those left out that the duty silences.
+    let paper = link.lamps()[0]
+        .lines()
+        .take_while(|(f, _)| *f < 0.25 * rate);
+    for (f, amplitude) in paper {
+        let n = (f / frequency).round();
+        assert!((f / (n * frequency) - 1.0).abs() < 1e-12);
         let law = 2.0 * sinc(n * duty).abs() * sinc(f * edge).abs();
         assert!((amplitude / 1e-6 - law).abs() < 1e-9);
     }

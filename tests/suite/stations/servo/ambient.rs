@@ -107,8 +107,7 @@ fn it_is_a_high_pass_that_keeps_the_output_at_the_reference() {
             assert!((ratio - 1.0).norm() < 1e-6, "{f}: {ratio}");
         }
         // The current it sends is all that leaves the input: light, dark current and shunt (3 mV of offset on the diode apart).
-        let drawn =
-            reading(front, "photocurrent, signal") + reading(front, "photocurrent, ambient");
+        let drawn = reading(front, "signal photocurrent") + reading(front, "ambient photocurrent");
         let sent = reading(front, "ambient servo, current");
         assert!((sent - drawn - 3e-9).abs() < 0.2e-9, "{sent} {drawn}");
     }
@@ -141,7 +140,7 @@ fn its_noise_is_its_resistors() {
     );
     near(share(".ambient_servo"), 4.0 * share(".feedback"));
     near(share(".voltage_noise"), 64e-18 * 1.1 * 25.0);
-    let light = reading(front, "photocurrent, signal") + 20e-6 + 2e-9;
+    let light = reading(front, "signal photocurrent") + 20e-6 + 2e-9;
     near(share(".shot"), 2.0 * 1.602_176_634e-19 * light * z);
 }
 
@@ -167,7 +166,7 @@ fn beyond_its_range_it_stands_still_and_says_so() {
     let front = station(&link, FRONT);
     let most = reading(front, "ambient servo, current");
     assert!((most - 45e-6).abs() < 1e-12, "{most}");
-    let light = reading(front, "photocurrent, signal") + 60e-6;
+    let light = reading(front, "signal photocurrent") + 60e-6;
     let output = 4.0 + 100e3 * (light - 45e-6);
     assert!((reading(front, "output") - output).abs() < 1e-3);
     assert!(
