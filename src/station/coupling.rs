@@ -3,7 +3,7 @@
 use num_complex::Complex64;
 
 use super::wiring::{Drive, Load};
-use super::{Conditions, Limit, Model, Reading, Runner, Share};
+use super::{Conditions, Model, Reading, Runner, Share};
 use crate::design::Section;
 use crate::quantity::Dimension;
 use crate::signal::pole::{FirstOrder, FirstOrderLaw};
@@ -95,10 +95,6 @@ impl Model for Coupling {
     }
 
     fn noise(&self, _: f64) -> Vec<Share> {
-        Vec::new()
-    }
-
-    fn limits(&self) -> Vec<Limit> {
         Vec::new()
     }
 

@@ -134,8 +134,10 @@ pub trait Model: Send + Sync {
     fn transfer(&self, frequency: f64) -> Complex64;
     /// Shares of the noise at its output at `frequency` (Hz, > 0).
     fn noise(&self, frequency: f64) -> Vec<Share>;
-    /// Where it clips or slews.
-    fn limits(&self) -> Vec<Limit>;
+    /// Where it clips or slews; nowhere, unless it says so.
+    fn limits(&self) -> Vec<Limit> {
+        Vec::new()
+    }
     /// What an engineer ought to know about its operating point.
     fn warnings(&self) -> Vec<String> {
         Vec::new()

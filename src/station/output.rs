@@ -4,7 +4,7 @@ use num_complex::Complex64;
 use std::f64::consts::{SQRT_2, TAU};
 
 use super::wiring::{Drive, Load};
-use super::{Conditions, Limit, Model, Reading, Runner, Share};
+use super::{Conditions, Model, Reading, Runner, Share};
 use crate::design::Section as DesignSection;
 use crate::physics::sound;
 use crate::quantity::Dimension;
@@ -167,10 +167,6 @@ impl Model for Output {
     }
 
     fn noise(&self, _: f64) -> Vec<Share> {
-        Vec::new()
-    }
-
-    fn limits(&self) -> Vec<Limit> {
         Vec::new()
     }
 

@@ -4,7 +4,7 @@ use num_complex::Complex64;
 
 use super::noise::{self, Contributor, NoiseSource};
 use super::wiring::Drive;
-use super::{Conditions, Limit, Model, Reading, Runner, Share};
+use super::{Conditions, Model, Reading, Runner, Share};
 use crate::design::Section;
 use crate::physics::noise::johnson;
 use crate::quantity::Dimension;
@@ -80,10 +80,6 @@ impl Model for Source {
             .iter()
             .map(|c| c.share(frequency, 1.0))
             .collect()
-    }
-
-    fn limits(&self) -> Vec<Limit> {
-        Vec::new()
     }
 
     fn runner(&self, conditions: &Conditions) -> Box<dyn Runner> {
