@@ -118,7 +118,9 @@ impl TransistorStage {
         let across = 1.0 / (1.0 / law.base_resistance + 1.0 / law.junction_resistance());
         stage.input_pole = FirstOrderLaw::low_pass(1.0 / (across * capacitance));
         let node = part.collector_capacitance + next.capacitance;
-        stage.lag = FirstOrderLaw::low_pass(1.0 / (stage.output_impedance(mid.into()).re * node));
+        // A saturated transistor without a resistor at its emitter holds the node: what rounding leaves of its impedance may have either sign.
+        let held = stage.output_impedance(mid.into()).re.max(0.0);
+        stage.lag = FirstOrderLaw::low_pass(1.0 / (held * node));
         stage.add_noises(before, temperature);
         stage.warn(before);
         stage
@@ -173,7 +175,12 @@ impl TransistorStage {
             temperature,
         );
         let mid = self.mid_band().into();
-        let by_emitter = (mid * law.tangent(mid).0 / self.output_impedance(mid)).re;
+        let by_emitter = if law.emitter_resistance > 0.0 {
+            (mid * law.tangent(mid).0 / self.output_impedance(mid)).re
+        } else {
+            // No resistor, no noise of its own; a saturated transistor would make this nought over nought.
+            0.0
+        };
         let at_base = base_loop.outer(quiescent.divider);
         let mut at_collector = base_loop.behind(by_emitter, law.collector_noise_gain());
         at_collector.push(Contributor::white(

@@ -26,6 +26,7 @@ pub struct Draft {
     transmitter: String,
     driver: String,
     emitter: String,
+    path: String,
     extra: String,
     detector: String,
     front_end: String,
@@ -64,6 +65,7 @@ flux_temperature = 0
 max_current = "inf"
 "#
             .into(),
+            path: "kind = \"air\"\ndistance = \"1 m\"\n".into(),
             extra: String::new(),
             detector: r#"kind = "photodiode"
 area = "1 cm²"
@@ -113,6 +115,12 @@ feedback_capacitor = 0
         self
     }
 
+    /// Keys of `[path]`.
+    pub fn path(mut self, keys: &str) -> Self {
+        self.path = keys.into();
+        self
+    }
+
     /// Keys of `[receiver.detector]`.
     pub fn detector(mut self, keys: &str) -> Self {
         self.detector = keys.into();
@@ -152,9 +160,7 @@ resistance = 0
 [transmitter.emitter]
 {}
 [path]
-kind = "air"
-distance = "1 m"
-
+{}
 {}
 [receiver.optics]
 area = "4 m²"
@@ -171,6 +177,7 @@ full_scale = "1 V"
             self.transmitter,
             self.driver,
             self.emitter,
+            self.path,
             self.extra,
             self.detector,
             self.front_end,

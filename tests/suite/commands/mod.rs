@@ -7,6 +7,8 @@ mod bad_files;
 mod catalogue;
 mod contract;
 mod demo_clips;
+mod demo_designs;
+mod hard_designs;
 mod options;
 mod rendering;
 mod stems;

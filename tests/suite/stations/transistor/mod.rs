@@ -2,7 +2,6 @@
 
 mod bench;
 mod circuit;
-mod faces;
 mod golden;
 mod harmonics;
 mod modulator;
