@@ -137,7 +137,20 @@ pub fn measure(link: &Link, bench: &Bench, seed: u64) -> Measured {
             noise_scatter_db = Some(noise.scatter_db);
             figures.noise_rms_v = Some(noise.rms);
             match fundamental {
-                Some(signal) => figures.set_signal_and_noise(signal, &noise),
+                Some(signal) => {
+                    figures.set_signal_and_noise(signal, &noise);
+                    if link.transfer(bench.tone).norm() == 0.0 {
+                        // A tone may still shake a stuck output; its idle noise says nothing of the link's.
+                        (figures.snr_db, figures.snr_a_db) = (None, None);
+                        figures.below_floor.retain(|k| !k.starts_with("snr"));
+                        for key in ["snr_db", "snr_a_db"] {
+                            figures.explain(
+                                key,
+                                "no small signal passes: an output rests on its limit",
+                            );
+                        }
+                    }
+                }
                 None => ["snr_db", "snr_a_db"]
                     .iter()
                     .for_each(|k| figures.explain(k, "no tone arrives")),
