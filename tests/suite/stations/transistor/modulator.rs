@@ -43,6 +43,22 @@ fn a_stiff_base_without_emitter_resistor_is_the_exponential() {
     }
 }
 
+/// The rest is searched for, and may end a last bit beside the bias: the slope is there all the same.
+#[test]
+fn every_bias_has_a_slope() {
+    let part = "part = \"small-signal-npn\"\n";
+    for step in 5..40 {
+        for gain in [100, 200, 300] {
+            let bias = 0.5e-3 * f64::from(step);
+            let bias = format!("transmitter.driver.bias={bias}");
+            let gain = format!("transmitter.driver.gain={gain}");
+            let link = modulator(part, 0.0, &coupling("10 µF"), &[&bias, &gain]);
+            let slope = reading(at(&link, HEAD), "current per volt");
+            assert!(slope > 5e-3, "{bias}, {gain}: {slope}");
+        }
+    }
+}
+
 #[test]
 fn slope_and_input_are_the_schematics() {
     let link = modulator(IDEAL, 0.0, "", &[]);
