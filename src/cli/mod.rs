@@ -144,7 +144,7 @@ fn conclude(
             .explain("clipped_samples", "no programme was rendered");
     }
     let budget = budget(link, bench.band);
-    let lamps = link.lamps().iter().any(|l| l.lines().next().is_some());
+    let lamps = link.lamps().iter().any(|l| l.hums());
     let verdicts = judge(design, &measured.figures, lamps);
     let mut warnings = link.warnings();
     warnings.extend(overdriven(link, programme, &measured.events));

@@ -76,8 +76,7 @@ pub fn measure(link: &Link, bench: &Bench, seed: u64) -> Measured {
         ..all.clone()
     };
     // Hum is what follows the mains: lamps with a clock of their own stand still for it.
-    let (hums, others): (Vec<&Lamp>, Vec<&Lamp>) =
-        link.lamps().iter().partition(|l| l.mains().is_some());
+    let (hums, others): (Vec<&Lamp>, Vec<&Lamp>) = link.lamps().iter().partition(|l| l.hums());
     let mut lamps = Conditions {
         noise: false,
         ..all.clone()
@@ -271,7 +270,12 @@ fn hum_figure(
     let Some(signal) = fundamental else {
         return figures.explain("hum_db", "no tone arrives");
     };
-    let mut mains: Vec<f64> = link.lamps().iter().filter_map(|l| l.mains()).collect();
+    let mut mains: Vec<f64> = link
+        .lamps()
+        .iter()
+        .filter(|l| l.hums())
+        .filter_map(|l| l.mains())
+        .collect();
     mains.sort_by(f64::total_cmp);
     mains.dedup();
     let power = record.and_then(|r| {

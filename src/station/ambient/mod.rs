@@ -227,6 +227,11 @@ impl Lamp {
         }]
     }
 
+    /// Whether it flickers with the mains.
+    pub fn hums(&self) -> bool {
+        self.mains().is_some() && self.lines().next().is_some()
+    }
+
     /// The lines of its flicker: frequency, Hz, and amplitude, A peak.
     pub fn lines(&self) -> impl Iterator<Item = (f64, f64)> + '_ {
         self.lines
