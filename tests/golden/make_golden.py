@@ -10,6 +10,7 @@ and Radau IIA (implicit Runge-Kutta), rtol 1e-12. The differences are printed an
 
 import math
 import pathlib
+import sys
 from dataclasses import dataclass
 from typing import Callable
 
@@ -89,7 +90,7 @@ def make(case):
             f" apart from LSODA {apart['LSODA'][i]:.1e}, from Radau {apart['Radau'][i]:.1e} of the largest swing"
         )
     head = [
-        "Source: make_golden.py beside this file (scipy solve_ivp); SI units; T = 293.15 K, V_T = kT/q",
+        f"Source: {pathlib.Path(sys.argv[0]).name} beside this file (scipy solve_ivp); SI units; T = 293.15 K, V_T = kT/q",
         *case.head,
         "Smooth start: s(t) = (1 - cos(pi t/0.5 ms))/2 up to 0.5 ms, 1 after it. Times t = n/384000 s, every n",
         "Solver: DOP853, rtol 1e-13, atol 1e-15 of each state's size, step at most 1/4 sample. Largest difference from LSODA and",
