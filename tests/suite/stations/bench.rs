@@ -7,6 +7,8 @@ use harklight::design::Design;
 use harklight::link::Link;
 use harklight::station::{Conditions, Curves, Model};
 use num_complex::Complex64;
+
+pub use crate::bench::{quiet, reading};
 use realfft::RealFftPlanner;
 
 /// A design whose detector catches `flux` watts at rest and makes 1 A/W of them.
@@ -92,27 +94,6 @@ pub fn station<'a>(link: &'a Link, path: &str) -> &'a dyn Model {
 
 pub fn front(link: &Link) -> &dyn Model {
     station(link, "receiver.front_end")
-}
-
-pub fn reading(model: &dyn Model, name: &str) -> f64 {
-    let point = model.operating_point();
-    let found = point.iter().find(|r| r.name == name);
-    found.unwrap_or_else(|| panic!("no reading {name}")).value
-}
-
-pub fn quiet(rate: f64) -> Conditions {
-    Conditions {
-        rate,
-        curves: Curves::Bent,
-        noise: false,
-        lamps: false,
-        seed: 1,
-        channel: 0,
-        fades: false,
-        start: 0.0,
-        cold: false,
-        silence: Vec::new(),
-    }
 }
 
 pub fn run(model: &dyn Model, conditions: &Conditions, input: &[f64]) -> Vec<f64> {

@@ -8,6 +8,8 @@ use harklight::link::Link;
 use harklight::station::{Conditions, Curves, Model};
 use num_complex::Complex64;
 
+pub use crate::bench::reading;
+
 pub const RATE: f64 = 384e3;
 
 /// An op-amp without limits and without noise, as keys of a section.
@@ -87,26 +89,11 @@ pub fn it(link: &Link) -> &dyn Model {
     at(link, "transmitter.stage.it")
 }
 
-/// A quantity of a station's operating point.
-pub fn reading(model: &dyn Model, name: &str) -> f64 {
-    let point = model.operating_point();
-    let found = point.iter().find(|r| r.name == name);
-    found.unwrap_or_else(|| panic!("no {name}")).value
-}
-
 /// A run with nothing random.
 pub fn quiet(curves: Curves) -> Conditions {
     Conditions {
-        rate: RATE,
         curves,
-        noise: false,
-        lamps: false,
-        seed: 1,
-        channel: 0,
-        fades: false,
-        start: 0.0,
-        cold: false,
-        silence: Vec::new(),
+        ..crate::bench::quiet(RATE)
     }
 }
 

@@ -10,6 +10,8 @@ use std::path::Path;
 
 use num_complex::Complex64;
 
+pub use crate::bench::{quiet, reading};
+
 use harklight::design::{Design, DesignError};
 use harklight::link::Link;
 use harklight::signal::spectrum::Analyser;
@@ -105,28 +107,6 @@ pub fn link(sets: &[&str]) -> Link {
 pub fn station<'a>(link: &'a Link, path: &str) -> &'a dyn Model {
     let found = link.stations().iter().find(|s| s.path() == path);
     found.map(AsRef::as_ref).unwrap_or_else(|| panic!("{path}"))
-}
-
-pub fn reading(model: &dyn Model, name: &str) -> f64 {
-    let all = model.operating_point();
-    let found = all.iter().find(|r| r.name == name);
-    found.unwrap_or_else(|| panic!("{name}")).value
-}
-
-/// Everything bends and nothing sounds.
-pub fn quiet(rate: f64) -> Conditions {
-    Conditions {
-        rate,
-        curves: Curves::Bent,
-        noise: false,
-        lamps: false,
-        fades: false,
-        start: 0.0,
-        seed: 1,
-        channel: 0,
-        cold: false,
-        silence: Vec::new(),
-    }
 }
 
 pub fn straight(rate: f64) -> Conditions {

@@ -5,8 +5,10 @@ use std::path::Path;
 
 use harklight::design::Design;
 use harklight::link::Link;
-use harklight::station::{Conditions, Curves, Model};
+use harklight::station::{Conditions, Model};
 use num_complex::Complex64;
+
+pub use crate::bench::{quiet, reading};
 
 pub const RATE: f64 = 384_000.0;
 /// kT/q at 293.15 K, V.
@@ -62,26 +64,6 @@ pub fn link(resistance: f64, stages: &str, driver: &str, edits: &[&str]) -> Link
 pub fn at<'a>(link: &'a Link, path: &str) -> &'a dyn Model {
     let found = link.stations().iter().find(|s| s.path() == path);
     found.unwrap_or_else(|| panic!("no {path}")).as_ref()
-}
-
-pub fn reading(model: &dyn Model, name: &str) -> f64 {
-    let found = model.operating_point().into_iter().find(|r| r.name == name);
-    found.unwrap_or_else(|| panic!("no reading {name}")).value
-}
-
-pub fn quiet(rate: f64) -> Conditions {
-    Conditions {
-        rate,
-        curves: Curves::Bent,
-        noise: false,
-        lamps: false,
-        seed: 1,
-        channel: 0,
-        fades: false,
-        start: 0.0,
-        cold: false,
-        silence: Vec::new(),
-    }
 }
 
 pub fn run(model: &dyn Model, conditions: &Conditions, input: &[f64]) -> Vec<f64> {
